@@ -1,0 +1,44 @@
+package pipeline
+
+import "time"
+
+// MeanRule says how a station's daily mean is made.
+type MeanRule string
+
+// The rules for a daily mean. The rule is stored with each day.
+const (
+	MeanMaxMin     MeanRule = "max_min"     // (max + min) / 2 of the station's day
+	MeanAsReported MeanRule = "as_reported" // the daily mean that the feed states
+	MeanHourly     MeanRule = "hourly"      // mean of the day's hours, with a completeness rule
+)
+
+// MeanRules lists the rules in the order in which messages name them.
+var MeanRules = []MeanRule{MeanMaxMin, MeanAsReported, MeanHourly}
+
+// Station is where air temperature is measured.
+type Station struct {
+	ID         string
+	Name       string
+	LatitudeD  float64 // degrees, + north
+	LongitudeD float64 // degrees, + east
+	ElevationM float64
+	UTCOffset  time.Duration // standard time minus UTC; no daylight saving
+	DayStarts  time.Duration // day boundary after local midnight, standard time
+	Mean       MeanRule
+	MinHours   int // MeanHourly: hours needed of 24
+	MaxHole    int // MeanHourly: longest run of missing hours allowed
+	BaseC      float64
+	FillDays   int      // longest gap, in days, that a straight line may bridge
+	ThawYear   MonthDay // first day of the window that a thaw season is sought in
+	FreezeYear MonthDay // first day of the window that a freeze season is sought in
+}
+
+// DayStart returns the instant at which the station's day begins.
+func (s *Station) DayStart(d Day) time.Time {
+	return d.Time().Add(s.DayStarts - s.UTCOffset)
+}
+
+// DayAt returns the station's day that contains the instant t.
+func (s *Station) DayAt(t time.Time) Day {
+	return Day(floorDiv(t.Add(s.UTCOffset-s.DayStarts).Unix(), secondsPerDay))
+}
