@@ -1,0 +1,203 @@
+package store
+
+import (
+	"context"
+	"crypto/sha256"
+	"encoding/hex"
+	"encoding/json"
+	"errors"
+	"fmt"
+	"time"
+
+	"github.com/jackc/pgx/v5"
+
+	"thawledger/pipeline"
+)
+
+// Arrival is a file as it lies in the archive, before anything is made of it.
+type Arrival struct {
+	Feed        string
+	Name        string
+	Hash        string // SHA-256 of the bytes, hex
+	Bytes       int64
+	SourceTime  time.Time
+	Host        string
+	ArchivePath string
+	Layout      *pipeline.Layout
+}
+
+// Batch is a line of the ledger.
+type Batch struct {
+	ID          int64
+	Feed        string
+	Name        string
+	Hash        string
+	ArchivePath string
+	Layout      *pipeline.Layout
+}
+
+// Seen says what the ledger made of an arrival.
+type Seen int
+
+// What an arrival may be to the ledger.
+const (
+	SeenNew     Seen = iota // a line was opened; read it
+	SeenSame                // these bytes are known and nothing has come since under this name
+	SeenWaiting             // a return to earlier bytes: a line was opened that waits to be asked for
+)
+
+// OpenBatch opens a line of the ledger for an arrival, unless the feed has
+// delivered the same bytes before. The batch's order is fixed here, once, under
+// a lock per feed: the source time in microseconds, moved on until no other
+// batch of the feed has it; arrivals of one look must come sorted by source
+// time and name. It also records what was seen under the file's name.
+func (db *DB) OpenBatch(ctx context.Context, a Arrival) (*Batch, Seen, error) {
+	text, hash, err := canonical(a.Layout)
+	if err != nil {
+		return nil, SeenSame, err
+	}
+	batch := &Batch{Feed: a.Feed, Name: a.Name, Hash: a.Hash, ArchivePath: a.ArchivePath, Layout: a.Layout}
+	seen := SeenNew
+	err = db.within(ctx, func(tx pgx.Tx) error {
+		if err := lock(ctx, tx, lockFeed, a.Feed); err != nil {
+			return err
+		}
+		var feedID int16
+		if err := tx.QueryRow(ctx, `select feed_id from thaw.feeds where feed = $1`, a.Feed).Scan(&feedID); err != nil {
+			return fmt.Errorf("find feed %s: %w", a.Feed, err)
+		}
+		var lastHash string
+		err := tx.QueryRow(ctx, `select content_hash from thaw.batches where feed_id = $1 and name = $2
+			order by batch_order desc limit 1`, feedID, a.Name).Scan(&lastHash)
+		if err != nil && !errors.Is(err, pgx.ErrNoRows) {
+			return fmt.Errorf("find last batch of %s: %w", a.Name, err)
+		}
+		var known bool
+		if err := tx.QueryRow(ctx, `select exists (select 1 from thaw.batches where feed_id = $1 and content_hash = $2)`, feedID, a.Hash).Scan(&known); err != nil {
+			return fmt.Errorf("find batch of %s: %w", a.Name, err)
+		}
+		state, reason := "opened", (*string)(nil)
+		switch {
+		case known && (lastHash == "" || lastHash == a.Hash):
+			seen = SeenSame
+		case known:
+			seen, state = SeenWaiting, "waiting"
+			why := "these bytes came before, and others since under this name; they are not used again until asked for"
+			reason = &why
+		}
+		if seen != SeenSame {
+			if _, err := tx.Exec(ctx, `insert into thaw.layouts (layout_hash, layout) values ($1, $2) on conflict do nothing`, hash, text); err != nil {
+				return fmt.Errorf("record layout: %w", err)
+			}
+			// The smallest free number from the source time on.
+			err := tx.QueryRow(ctx, `insert into thaw.batches (feed_id, name, content_hash, bytes, batch_order, layout_hash,
+					source_time, host, archive_path, state, reason)
+				select $1, $2, $3, $4, (select min(n) from (
+						select $5::bigint as n union all
+						select b.batch_order + 1 from thaw.batches b where b.feed_id = $1 and b.batch_order >= $5) c
+					where not exists (select 1 from thaw.batches b where b.feed_id = $1 and b.batch_order = c.n)),
+					$6, $7, $8, $9, $10, $11 returning batch_id`,
+				feedID, a.Name, a.Hash, a.Bytes, a.SourceTime.UnixMicro(), hash, a.SourceTime, a.Host, a.ArchivePath, state, reason).Scan(&batch.ID)
+			if err != nil {
+				return fmt.Errorf("open batch of %s: %w", a.Name, err)
+			}
+		}
+		return markSeen(ctx, tx, feedID, a)
+	})
+	return batch, seen, err
+}
+
+func markSeen(ctx context.Context, tx pgx.Tx, feedID int16, a Arrival) error {
+	_, err := tx.Exec(ctx, `insert into thaw.feed_files (feed_id, host, name, bytes, source_time, content_hash)
+		values ($1, $2, $3, $4, $5, $6) on conflict (feed_id, host, name) do update
+		set bytes = excluded.bytes, source_time = excluded.source_time, content_hash = excluded.content_hash, seen_at = clock_timestamp()`,
+		feedID, a.Host, a.Name, a.Bytes, a.SourceTime, a.Hash)
+	if err != nil {
+		return fmt.Errorf("record sight of %s: %w", a.Name, err)
+	}
+	return nil
+}
+
+// canonical returns the layout's text and hash.
+func canonical(l *pipeline.Layout) (text []byte, hash string, err error) {
+	text, err = json.Marshal(l) // map keys come sorted
+	if err != nil {
+		return nil, "", fmt.Errorf("write layout: %w", err)
+	}
+	sum := sha256.Sum256(text)
+	return text, hex.EncodeToString(sum[:]), nil
+}
+
+// FileSeen is what was last seen under a name.
+type FileSeen struct {
+	Bytes      int64
+	SourceTime time.Time
+	Hash       string
+}
+
+// FilesSeen returns what this host last saw under each name of a feed.
+func (db *DB) FilesSeen(ctx context.Context, feed, host string) (map[string]FileSeen, error) {
+	rows, err := db.pool.Query(ctx, `select name, bytes, source_time, content_hash
+		from thaw.feed_files join thaw.feeds using (feed_id) where feed = $1 and host = $2`, feed, host)
+	if err != nil {
+		return nil, fmt.Errorf("read files seen of %s: %w", feed, err)
+	}
+	out := map[string]FileSeen{}
+	var (
+		name string
+		f    FileSeen
+	)
+	_, err = pgx.ForEachRow(rows, []any{&name, &f.Bytes, &f.SourceTime, &f.Hash}, func() error {
+		out[name] = f
+		return nil
+	})
+	if err != nil {
+		return nil, fmt.Errorf("read files seen of %s: %w", feed, err)
+	}
+	return out, nil
+}
+
+// OpenBatches returns the batches of a host that were not read to their end.
+func (db *DB) OpenBatches(ctx context.Context, host string) ([]Batch, error) {
+	return db.batches(ctx, `b.state = 'opened' and b.host = $1`, host)
+}
+
+func (db *DB) batches(ctx context.Context, where string, args ...any) ([]Batch, error) {
+	rows, err := db.pool.Query(ctx, `select b.batch_id::bigint, f.feed, b.name, b.content_hash, b.archive_path, l.layout
+		from thaw.batches b join thaw.feeds f using (feed_id) join thaw.layouts l using (layout_hash)
+		where `+where+` order by b.batch_id`, args...)
+	if err != nil {
+		return nil, fmt.Errorf("read batches: %w", err)
+	}
+	out, err := pgx.CollectRows(rows, func(r pgx.CollectableRow) (Batch, error) {
+		b := Batch{Layout: &pipeline.Layout{}}
+		return b, r.Scan(&b.ID, &b.Feed, &b.Name, &b.Hash, &b.ArchivePath, b.Layout)
+	})
+	if err != nil {
+		return nil, fmt.Errorf("read batches: %w", err)
+	}
+	return out, nil
+}
+
+// HoldBatch records that nothing of a batch is used, and why. What was counted
+// and set aside before that is kept for looking at.
+func (db *DB) HoldBatch(ctx context.Context, id int64, reason string, c pipeline.Counts) error {
+	return db.within(ctx, func(tx pgx.Tx) error {
+		return closeBatch(ctx, tx, id, "held_back", &reason, c, 0)
+	})
+}
+
+// closeBatch writes what a batch counted.
+func closeBatch(ctx context.Context, tx pgx.Tx, id int64, state string, reason *string, c pipeline.Counts, parts int) error {
+	_, err := tx.Exec(ctx, `update thaw.batches set state = $2, reason = $3, read_at = clock_timestamp(),
+			lines = $4, lines_header = $5, lines_blank = $6, lines_comment = $7,
+			rows = $8, rows_read = $9, rows_without_value = $10, rows_set_aside = $11,
+			cells = $12, cells_read = $13, cells_missing = $14, cells_set_aside = $15, parts = $16
+		where batch_id = $1 and state = 'opened'`,
+		id, state, reason, c.Lines, c.Header, c.Blank, c.Comments, c.Rows, c.RowsRead, c.RowsWithoutValue, c.RowsSetAside,
+		c.Cells, c.CellsRead, c.CellsMissing, c.CellsSetAside, parts)
+	if err != nil {
+		return fmt.Errorf("close batch %d: %w", id, err)
+	}
+	return nil
+}

@@ -1,0 +1,292 @@
+package store
+
+import (
+	"context"
+	"fmt"
+	"time"
+
+	"github.com/jackc/pgx/v5"
+
+	"thawledger/pipeline"
+)
+
+// SeriesInfo is what all readings of a series share, for making daily values.
+type SeriesInfo struct {
+	Feed     string
+	Rank     int
+	Sensor   string
+	Variable pipeline.Variable
+	SpanS    int32
+}
+
+// EachReading calls f for the station's readings whose spans start in
+// [from, to), in order of time.
+func (t *Take) EachReading(ctx context.Context, from, to time.Time, f func(s *SeriesInfo, startS int64, valueC float64, q pipeline.Quality)) error {
+	infos, ids, err := t.seriesInfos(ctx)
+	if err != nil {
+		return err
+	}
+	rows, err := t.tx.Query(ctx, `select series_id, start_utc, value_c, quality from thaw.reading_values
+		where series_id = any($1) and start_utc >= $2 and start_utc < $3 order by start_utc, series_id`, ids, from, to)
+	if err != nil {
+		return fmt.Errorf("read readings of %s: %w", t.station, err)
+	}
+	var (
+		id      int32
+		start   time.Time
+		value   float64
+		quality int16
+	)
+	_, err = pgx.ForEachRow(rows, []any{&id, &start, &value, &quality}, func() error {
+		f(infos[id], start.Unix(), value, pipeline.Quality(quality))
+		return nil
+	})
+	if err != nil {
+		return fmt.Errorf("read readings of %s: %w", t.station, err)
+	}
+	return nil
+}
+
+func (t *Take) seriesInfos(ctx context.Context) (map[int32]*SeriesInfo, []int32, error) {
+	rows, err := t.tx.Query(ctx, `select series_id, feed, rank, sensor, variable, span_s
+		from thaw.series join thaw.feeds using (feed_id) where station = $1 order by series_id`, t.station)
+	if err != nil {
+		return nil, nil, fmt.Errorf("read series of %s: %w", t.station, err)
+	}
+	infos := map[int32]*SeriesInfo{}
+	var ids []int32
+	var (
+		id       int32
+		s        SeriesInfo
+		variable int16
+	)
+	_, err = pgx.ForEachRow(rows, []any{&id, &s.Feed, &s.Rank, &s.Sensor, &variable, &s.SpanS}, func() error {
+		info := s
+		info.Variable = pipeline.Variable(variable)
+		infos[id], ids = &info, append(ids, id)
+		return nil
+	})
+	if err != nil {
+		return nil, nil, fmt.Errorf("read series of %s: %w", t.station, err)
+	}
+	return infos, nonNil(ids), nil
+}
+
+// Span returns the first and last instant at which a reading of the station
+// starts; ok is false if it has none.
+func (t *Take) Span(ctx context.Context) (first, last time.Time, ok bool, err error) {
+	var a, b *time.Time
+	err = t.tx.QueryRow(ctx, `select min(v.start_utc), max(v.start_utc) from thaw.reading_values v
+		where v.series_id in (select series_id from thaw.series where station = $1)`, t.station).Scan(&a, &b)
+	if err != nil {
+		return first, last, false, fmt.Errorf("read span of %s: %w", t.station, err)
+	}
+	if a == nil {
+		return first, last, false, nil
+	}
+	return *a, *b, true, nil
+}
+
+// DayRow is a row of daily_values. MeanC, MaxC and MinC are nil where there is
+// no value.
+type DayRow struct {
+	Day               pipeline.Day
+	MeanC, MaxC, MinC *float64
+	LowC, HighC       float64
+	Origin            pipeline.Origin
+	Hours             int16
+	LongestHole       int16
+	Quality           pipeline.Quality
+	Rule              pipeline.MeanRule
+}
+
+// Days returns the station's daily values in order of date.
+func (t *Take) Days(ctx context.Context) ([]DayRow, error) {
+	rows, err := t.tx.Query(ctx, `select day, mean_c, max_c, min_c, low_c, high_c, origin, hours, longest_hole, quality, mean_rule
+		from thaw.daily_values where station = $1 order by day`, t.station)
+	if err != nil {
+		return nil, fmt.Errorf("read daily values of %s: %w", t.station, err)
+	}
+	out, err := pgx.CollectRows(rows, func(r pgx.CollectableRow) (DayRow, error) {
+		var (
+			d               DayRow
+			day             time.Time
+			origin, quality int16
+			rule            string
+		)
+		err := r.Scan(&day, &d.MeanC, &d.MaxC, &d.MinC, &d.LowC, &d.HighC, &origin, &d.Hours, &d.LongestHole, &quality, &rule)
+		d.Day, d.Origin, d.Quality, d.Rule = dayOf(day), pipeline.Origin(origin), pipeline.Quality(quality), pipeline.MeanRule(rule)
+		return d, err
+	})
+	if err != nil {
+		return nil, fmt.Errorf("read daily values of %s: %w", t.station, err)
+	}
+	return out, nil
+}
+
+// dayOf turns a date as the client returns it into a Day.
+func dayOf(t time.Time) pipeline.Day { return pipeline.DayOf(t.Year(), t.Month(), t.Day()) }
+
+// WriteDays puts daily values in the place of those of the days in gone, which
+// are sorted. Days in rows that the table already holds must be in gone.
+func (t *Take) WriteDays(ctx context.Context, gone []pipeline.Day, rows []DayRow) error {
+	if len(gone) > 0 {
+		dates := make([]time.Time, len(gone))
+		for i, d := range gone {
+			dates[i] = d.Time()
+		}
+		_, err := t.tx.Exec(ctx, `delete from thaw.daily_values where station = $1 and day = any($2) and day between $3 and $4`,
+			t.station, dates, dates[0], dates[len(dates)-1])
+		if err != nil {
+			return fmt.Errorf("clear daily values of %s: %w", t.station, err)
+		}
+	}
+	if len(rows) == 0 {
+		return nil
+	}
+	_, err := t.tx.CopyFrom(ctx, pgx.Identifier{"thaw", "daily_values"},
+		[]string{"day", "mean_c", "max_c", "min_c", "low_c", "high_c", "origin", "hours", "longest_hole", "quality", "mean_rule", "station"},
+		pgx.CopyFromSlice(len(rows), func(i int) ([]any, error) {
+			r := &rows[i]
+			return []any{r.Day.Time(), r.MeanC, r.MaxC, r.MinC, r.LowC, r.HighC, int16(r.Origin), r.Hours, r.LongestHole,
+				int16(r.Quality), string(r.Rule), t.station}, nil
+		}))
+	if err != nil {
+		return fmt.Errorf("write daily values of %s: %w", t.station, err)
+	}
+	return nil
+}
+
+// Indices is one kind's columns of a day in air_index_daily.
+type Indices struct {
+	Season              pipeline.Day // first day of the thaw or freeze year
+	RunningC            *float64     // nil where a gap leaves it open
+	CurveLow, CurveHigh float64
+	SumLow, SumHigh     float64
+}
+
+// known returns the index if its bounds agree.
+func known(low, high float64) *float64 {
+	if low == high {
+		return &low
+	}
+	return nil
+}
+
+// IndexRow is a row of air_index_daily.
+type IndexRow struct {
+	Day          pipeline.Day
+	Thaw, Freeze Indices
+}
+
+// WriteIndexDays puts rows, consecutive in time, in the place of all that the
+// table holds of the station from the first to the last of them.
+func (t *Take) WriteIndexDays(ctx context.Context, rows []IndexRow) error {
+	if len(rows) == 0 {
+		return nil
+	}
+	_, err := t.tx.Exec(ctx, `delete from thaw.air_index_daily where station = $1 and day between $2 and $3`,
+		t.station, rows[0].Day.Time(), rows[len(rows)-1].Day.Time())
+	if err != nil {
+		return fmt.Errorf("clear indices of %s: %w", t.station, err)
+	}
+	columns := []string{"day", "station"}
+	for _, kind := range []string{"thaw", "freeze"} {
+		columns = append(columns, kind+"_season", kind+"_running_c_days", kind+"_curve_c_days", kind+"_curve_low_c_days",
+			kind+"_curve_high_c_days", kind+"_sum_c_days", kind+"_sum_low_c_days", kind+"_sum_high_c_days")
+	}
+	_, err = t.tx.CopyFrom(ctx, pgx.Identifier{"thaw", "air_index_daily"}, columns,
+		pgx.CopyFromSlice(len(rows), func(i int) ([]any, error) {
+			r := &rows[i]
+			out := make([]any, 0, len(columns))
+			out = append(out, r.Day.Time(), t.station)
+			for _, x := range []*Indices{&r.Thaw, &r.Freeze} {
+				out = append(out, x.Season.Time(), x.RunningC, known(x.CurveLow, x.CurveHigh), x.CurveLow, x.CurveHigh,
+					known(x.SumLow, x.SumHigh), x.SumLow, x.SumHigh)
+			}
+			return out, nil
+		}))
+	if err != nil {
+		return fmt.Errorf("write indices of %s: %w", t.station, err)
+	}
+	return nil
+}
+
+// DropIndexDays removes what air_index_daily holds of the station before first
+// and after last.
+func (t *Take) DropIndexDays(ctx context.Context, first, last pipeline.Day) error {
+	_, err := t.tx.Exec(ctx, `delete from thaw.air_index_daily where station = $1 and (day < $2 or day > $3)`, t.station, first.Time(), last.Time())
+	if err != nil {
+		return fmt.Errorf("clear indices of %s: %w", t.station, err)
+	}
+	return nil
+}
+
+// SeasonRow is a row of air_index_season.
+type SeasonRow struct {
+	Kind                     pipeline.Kind
+	Definition               pipeline.Definition
+	Start                    pipeline.Day
+	Label                    string
+	Low, High                float64
+	FirstDay, LastDay        *pipeline.Day
+	Through                  pipeline.Day
+	Over, Complete, NoSeason bool
+	EdgeProvisional          bool
+	OnsetProvisional         bool
+	Observed, Interpolated   int
+	Missing, LongestGap      int
+	Rule                     pipeline.MeanRule
+	BaseC                    float64
+}
+
+// WriteSeasons puts rows in the place of those with the same kind, definition
+// and start.
+func (t *Take) WriteSeasons(ctx context.Context, rows []SeasonRow) error {
+	batch := &pgx.Batch{}
+	for _, r := range rows {
+		batch.Queue(`insert into thaw.air_index_season (station, kind, definition, season_start, season,
+				index_c_days, index_low_c_days, index_high_c_days, start_day, end_day, through_day, season_over, complete,
+				no_season, edge_provisional, onset_provisional, days_observed, days_interpolated, days_missing,
+				longest_gap_days, mean_rule, base_c)
+			values ($1, $2, $3, $4, $5, $6, $7, $8, $9, $10, $11, $12, $13, $14, $15, $16, $17, $18, $19, $20, $21, $22)
+			on conflict (station, kind, definition, season_start) do update set
+				season = excluded.season, index_c_days = excluded.index_c_days, index_low_c_days = excluded.index_low_c_days,
+				index_high_c_days = excluded.index_high_c_days, start_day = excluded.start_day, end_day = excluded.end_day,
+				through_day = excluded.through_day, season_over = excluded.season_over, complete = excluded.complete,
+				no_season = excluded.no_season, edge_provisional = excluded.edge_provisional,
+				onset_provisional = excluded.onset_provisional, days_observed = excluded.days_observed,
+				days_interpolated = excluded.days_interpolated, days_missing = excluded.days_missing,
+				longest_gap_days = excluded.longest_gap_days, mean_rule = excluded.mean_rule, base_c = excluded.base_c`,
+			t.station, string(r.Kind), string(r.Definition), r.Start.Time(), r.Label, known(r.Low, r.High), r.Low, r.High,
+			dateOf(r.FirstDay), dateOf(r.LastDay), r.Through.Time(), r.Over, r.Complete, r.NoSeason, r.EdgeProvisional, r.OnsetProvisional,
+			r.Observed, r.Interpolated, r.Missing, r.LongestGap, string(r.Rule), r.BaseC)
+	}
+	if err := t.tx.SendBatch(ctx, batch).Close(); err != nil {
+		return fmt.Errorf("write seasons of %s: %w", t.station, err)
+	}
+	return nil
+}
+
+// DropSeasons removes the station's seasons that the record no longer reaches,
+// or that a changed start of the year has moved: those not in starts.
+func (t *Take) DropSeasons(ctx context.Context, kind pipeline.Kind, starts []pipeline.Day) error {
+	dates := make([]time.Time, len(starts))
+	for i, d := range starts {
+		dates[i] = d.Time()
+	}
+	_, err := t.tx.Exec(ctx, `delete from thaw.air_index_season where station = $1 and kind = $2 and not season_start = any($3)`,
+		t.station, string(kind), dates)
+	if err != nil {
+		return fmt.Errorf("clear seasons of %s: %w", t.station, err)
+	}
+	return nil
+}
+
+func dateOf(d *pipeline.Day) *time.Time {
+	if d == nil {
+		return nil
+	}
+	t := d.Time()
+	return &t
+}
