@@ -1,0 +1,114 @@
+package degreeday
+
+import (
+	"fmt"
+	"math"
+)
+
+// Track is how the indices grow over a season, day by day, in degC.d.
+type Track struct {
+	Running []float64 // C less the lowest C so far; falls again after the season
+	ToDate  []float64 // curve index to date: the largest Running so far
+	Sum     []float64 // sum index to date
+
+	// First and Last are the places, from 0, of the first and the last day of
+	// the largest rise; -1 if no day is above zero. Of equal highs the earliest
+	// counts and of equal lows the latest: the rise is the shortest there is.
+	First, Last int
+}
+
+// Rise returns the track of a season's daily excesses in degC, one a day without
+// gaps. Thawing: mean less base; freezing: base less mean. It panics if a value
+// is not finite or beyond 1e6 degC.
+func Rise(excessC []float64) Track {
+	var t Track
+	t.Rise(excessC)
+	return t
+}
+
+// Rise makes t anew from other excesses, in the memory that t has.
+func (t *Track) Rise(excessC []float64) {
+	n := len(excessC)
+	t.Running, t.ToDate, t.Sum = resized(t.Running, n), resized(t.ToDate, n), resized(t.Sum, n)
+	r := newRise()
+	for i, x := range excessC {
+		if !isTemperature(x) {
+			panic(fmt.Sprintf("degreeday: excess %v at place %d is not a difference of temperatures", x, i))
+		}
+		r.step(x)
+		t.Running[i], t.ToDate[i], t.Sum[i] = r.running, r.toDate, r.sum
+	}
+	t.First, t.Last = r.first, r.last
+}
+
+func resized(s []float64, n int) []float64 {
+	if cap(s) < n {
+		return make([]float64, n)
+	}
+	return s[:n]
+}
+
+// mostC is far above any temperature, and so low that no season's sum can leave
+// the range of float64.
+const mostC = 1e6
+
+// isTemperature is false for NaN too.
+func isTemperature(c float64) bool { return math.Abs(c) <= mostC }
+
+// rise is the state of a track after some days.
+//
+// C less its lowest value so far is kept as a total of its own that starts again
+// from zero at each new low. That is the same number, and it makes the index
+// independent of all that came before the low: of the start of the window, and
+// of how missing days of the cold season are filled.
+type rise struct {
+	running, toDate, sum float64
+
+	sinceLow, positive total
+	days               int
+	begin              int // place of the day after the latest low
+	first, last        int // of the largest rise
+	firstPos, lastPos  int // first and last day above zero
+}
+
+func newRise() rise { return rise{first: -1, last: -1, firstPos: -1, lastPos: -1} }
+
+// step adds a day.
+func (r *rise) step(excessC float64) {
+	i := r.days
+	r.days++
+	r.sinceLow.add(excessC)
+	r.running = r.sinceLow.value()
+	switch {
+	case r.running <= 0:
+		r.running, r.sinceLow, r.begin = 0, total{}, i+1
+	case r.running > r.toDate:
+		r.toDate, r.first, r.last = r.running, r.begin, i
+	}
+	if excessC > 0 {
+		r.positive.add(excessC)
+		r.sum = r.positive.value()
+		if r.firstPos < 0 {
+			r.firstPos = i
+		}
+		r.lastPos = i
+	}
+}
+
+// total is a compensated sum (A. Neumaier, 1974, "Rundungsfehleranalyse einiger
+// Verfahren zur Summation endlicher Summen", ZAMM 54). For a year of daily means
+// the low part loses nothing, so that the value is the exact sum rounded once:
+// it never falls when a term rises.
+type total struct{ high, low float64 }
+
+func (t *total) add(x float64) {
+	sum := t.high + x
+	if math.Abs(t.high) >= math.Abs(x) {
+		t.low += (t.high - sum) + x
+	} else {
+		t.low += (x - sum) + t.high
+	}
+	t.high = sum
+}
+
+func (t *total) value() float64 { return t.high + t.low }
