@@ -20,7 +20,8 @@ type Arrival struct {
 	Name        string
 	Hash        string // SHA-256 of the bytes, hex
 	Bytes       int64
-	SourceTime  time.Time
+	SourceTime  time.Time // when the source wrote it; never later than now, since it fixes the order
+	SeenTime    time.Time // when the source says it wrote it
 	Host        string
 	ArchivePath string
 	Layout      *pipeline.Layout
@@ -111,7 +112,7 @@ func markSeen(ctx context.Context, tx pgx.Tx, feedID int16, a Arrival) error {
 	_, err := tx.Exec(ctx, `insert into thaw.feed_files (feed_id, host, name, bytes, source_time, content_hash)
 		values ($1, $2, $3, $4, $5, $6) on conflict (feed_id, host, name) do update
 		set bytes = excluded.bytes, source_time = excluded.source_time, content_hash = excluded.content_hash, seen_at = clock_timestamp()`,
-		feedID, a.Host, a.Name, a.Bytes, a.SourceTime, a.Hash)
+		feedID, a.Host, a.Name, a.Bytes, a.SeenTime, a.Hash)
 	if err != nil {
 		return fmt.Errorf("record sight of %s: %w", a.Name, err)
 	}

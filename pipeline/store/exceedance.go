@@ -127,11 +127,20 @@ func (j *Judging) AddStandingChange(ctx context.Context, s *StandingRow, c Stand
 
 // Unannounced returns changes that are to be told and have not been, oldest first.
 func (db *DB) Unannounced(ctx context.Context, limit int) ([]StandingChange, error) {
+	return db.standingChanges(ctx, `announced_at is null`, limit)
+}
+
+// Told returns the changes that have been told after a given one, oldest first.
+func (db *DB) Told(ctx context.Context, after int64) ([]StandingChange, error) {
+	return db.standingChanges(ctx, `announced_at is not null and change_id > $2`, 1000, after)
+}
+
+func (db *DB) standingChanges(ctx context.Context, where string, args ...any) ([]StandingChange, error) {
 	rows, err := db.pool.Query(ctx, `select change_id, coalesce(exceedance_id, 0), site, surface, kind, season_start, day,
 			coalesce(from_state, ''), to_state, why, index_low_c_days, index_high_c_days, design_c_days, exceeded_on, recorded_at
-		from thaw.standing_changes where announce and announced_at is null order by change_id limit $1`, limit)
+		from thaw.standing_changes where announce and `+where+` order by change_id limit $1`, args...)
 	if err != nil {
-		return nil, fmt.Errorf("read changes to be told: %w", err)
+		return nil, fmt.Errorf("read standing changes: %w", err)
 	}
 	return pgx.CollectRows(rows, func(r pgx.CollectableRow) (StandingChange, error) {
 		var c StandingChange

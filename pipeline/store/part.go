@@ -3,6 +3,7 @@ package store
 import (
 	"context"
 	"fmt"
+	"math"
 	"strings"
 	"time"
 
@@ -101,26 +102,30 @@ func (db *DB) UnpublishedBatches(ctx context.Context, host string) ([]Batch, err
 }
 
 // OverdueBatches returns the host's batches with parts that the bus confirmed
-// before a time and that nobody has committed since.
-func (db *DB) OverdueBatches(ctx context.Context, host string, before time.Time) ([]Batch, error) {
+// at least age ago, by the database's clock, and that nobody has committed since.
+func (db *DB) OverdueBatches(ctx context.Context, host string, age time.Duration) ([]Batch, error) {
 	return db.batches(ctx, `b.state = 'read' and b.host = $1 and exists (select 1 from thaw.batch_parts p
-		where p.batch_id = b.batch_id and p.published_at < $2 and `+open+`)`, host, before)
+		where p.batch_id = b.batch_id and p.published_at <= clock_timestamp() - $2::interval and `+open+`)`, host, age)
 }
 
-// NextAttempt counts one more attempt for the open parts of a batch that were
-// published before a time, or never, and returns them. A part that has had all
-// the attempts that are allowed is marked stuck instead.
-func (db *DB) NextAttempt(ctx context.Context, id int64, before time.Time, allowed int) (Attempts, error) {
+// Unconfirmed is the age that only parts have which the bus never confirmed.
+const Unconfirmed = time.Duration(math.MaxInt64)
+
+// NextAttempt counts one more attempt for the open parts of a batch that the bus
+// never confirmed, or confirmed at least age ago, and returns them. A part that
+// has had all the attempts that are allowed is marked stuck instead.
+func (db *DB) NextAttempt(ctx context.Context, id int64, age time.Duration, allowed int) (Attempts, error) {
 	out := Attempts{}
 	err := db.within(ctx, func(tx pgx.Tx) error {
 		_, err := tx.Exec(ctx, `update thaw.batch_parts p set stuck_at = clock_timestamp(),
 				reason = format('published %s times and never committed', attempt)
-			where batch_id = $1 and published_at < $2 and attempt >= $3 and `+open, id, before, allowed)
+			where batch_id = $1 and published_at <= clock_timestamp() - $2::interval and attempt >= $3 and `+open, id, age, allowed)
 		if err != nil {
 			return err
 		}
 		rows, err := tx.Query(ctx, `update thaw.batch_parts p set attempt = attempt + 1, published_at = null
-			where batch_id = $1 and (published_at is null or published_at < $2) and `+open+` returning part, attempt`, id, before)
+			where batch_id = $1 and (published_at is null or published_at <= clock_timestamp() - $2::interval) and `+open+`
+			returning part, attempt`, id, age)
 		if err != nil {
 			return err
 		}

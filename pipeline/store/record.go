@@ -222,6 +222,16 @@ func (t *Take) DropIndexDays(ctx context.Context, first, last pipeline.Day) erro
 	return nil
 }
 
+// DropRecord removes all indices of the station.
+func (t *Take) DropRecord(ctx context.Context) error {
+	for _, table := range []string{"air_index_daily", "air_index_season"} {
+		if _, err := t.tx.Exec(ctx, `delete from thaw.`+table+` where station = $1`, t.station); err != nil {
+			return fmt.Errorf("clear indices of %s: %w", t.station, err)
+		}
+	}
+	return nil
+}
+
 // SeasonRow is a row of air_index_season.
 type SeasonRow struct {
 	Kind                     pipeline.Kind

@@ -130,3 +130,55 @@ comment on column thaw.ledger.parts_stuck is 'Parts given up.';
 comment on column thaw.ledger.readings_new is 'Readings with a new key.';
 comment on column thaw.ledger.readings_changed is 'Readings that took the place of another.';
 comment on column thaw.ledger.readings_unchanged is 'Readings that were there already, or lost against a later batch.';
+
+create view thaw.standing_now as
+select distinct on (s.site, s.surface, s.kind, d.definition, d.index_of, d.direction)
+       s.site, t.name as site_name, s.surface, u.name as surface_name, t.station, s.kind, d.definition, d.index_of, d.direction,
+       s.season, s.season_start, s.day, s.state, s.level,
+       s.index_c_days, s.index_low_c_days, s.index_high_c_days, s.sum_beside_c_days, s.design_c_days,
+       s.index_low_c_days / s.design_c_days as share_of_design,
+       s.n_factor, d.design_stated, d.unit_stated, d.source as design_source,
+       s.near_on, s.exceeded_on, s.confirmed_on, s.days_interpolated, s.days_missing, s.season_over,
+       i.onset_provisional, s.design_value_id
+from thaw.standings s
+join thaw.design_values d using (design_value_id)
+join thaw.sites t on t.site = s.site
+join thaw.surfaces u on u.site = s.site and u.surface = s.surface
+left join thaw.air_index_season i on i.station = t.station and i.kind = s.kind and i.season_start = s.season_start
+     and i.definition = case d.definition when 'sum' then 'sum' else 'curve' end
+order by s.site, s.surface, s.kind, d.definition, d.index_of, d.direction,
+         -- what must be reached is known at a season's end: until then the last one that is over is shown
+         d.direction = 'not_below' and s.state = 'unknown' and not s.season_over, s.season_start desc;
+comment on view thaw.standing_now is 'The current standing of every surface. Screening figures: local codes and a licensed engineer decide.';
+comment on column thaw.standing_now.site is 'Site.';
+comment on column thaw.standing_now.site_name is 'Its name.';
+comment on column thaw.standing_now.surface is 'Surface.';
+comment on column thaw.standing_now.surface_name is 'Its name.';
+comment on column thaw.standing_now.station is 'Station that the site draws on.';
+comment on column thaw.standing_now.kind is 'thaw or freeze.';
+comment on column thaw.standing_now.definition is 'Definition of the design value: curve, sum or not_stated (compared with the curve index).';
+comment on column thaw.standing_now.index_of is 'air or surface.';
+comment on column thaw.standing_now.direction is 'not_above or not_below.';
+comment on column thaw.standing_now.season is 'Name of the season.';
+comment on column thaw.standing_now.season_start is 'First day of the thaw or freeze year.';
+comment on column thaw.standing_now.day is 'Standing date: the last day used.';
+comment on column thaw.standing_now.state is 'exceeded, unknown, expected, near, within or fell_short.';
+comment on column thaw.standing_now.level is 'within, near or exceeded by the index alone.';
+comment on column thaw.standing_now.index_c_days is 'Index compared, degC.d; null where missing days leave it open.';
+comment on column thaw.standing_now.index_low_c_days is 'Lowest possible index, degC.d.';
+comment on column thaw.standing_now.index_high_c_days is 'Highest possible index, degC.d.';
+comment on column thaw.standing_now.sum_beside_c_days is 'Sum index beside a design value of no stated definition, degC.d.';
+comment on column thaw.standing_now.design_c_days is 'Design value, degC.d.';
+comment on column thaw.standing_now.share_of_design is 'Lowest possible index divided by the design value.';
+comment on column thaw.standing_now.n_factor is 'n-factor applied; null for a design value of the air.';
+comment on column thaw.standing_now.design_stated is 'Design value as its document states it.';
+comment on column thaw.standing_now.unit_stated is 'Unit in its document.';
+comment on column thaw.standing_now.design_source is 'Document that states it.';
+comment on column thaw.standing_now.near_on is 'First day near the design value.';
+comment on column thaw.standing_now.exceeded_on is 'First day at or past it.';
+comment on column thaw.standing_now.confirmed_on is 'First day on which even the lowest possible index was.';
+comment on column thaw.standing_now.days_interpolated is 'Days of the season filled on a straight line.';
+comment on column thaw.standing_now.days_missing is 'Days of the season without a mean.';
+comment on column thaw.standing_now.season_over is 'Whether the season is over.';
+comment on column thaw.standing_now.onset_provisional is 'The start of the season may still move.';
+comment on column thaw.standing_now.design_value_id is 'Number of the design value.';

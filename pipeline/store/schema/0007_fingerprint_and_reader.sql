@@ -69,7 +69,7 @@ $$;
 comment on function thaw.fingerprint_tables is 'Rows and a hash for each table, bookkeeping left out; for finding where two databases differ.';
 
 create function thaw.fingerprint() returns text language sql stable as $$
-    select md5(string_agg(part || ' ' || rows || ' ' || hash, e'\n' order by part collate "C")) from thaw.fingerprint_tables()
+    select md5(coalesce(string_agg(part || ' ' || rows || ' ' || hash, e'\n' order by part collate "C"), '')) from thaw.fingerprint_tables()
 $$;
 comment on function thaw.fingerprint is 'One hash over all that the program holds, bookkeeping (numbers of rows and batches, clock times, hosts, attempts) left out. Equal in two databases that hold the same.';
 

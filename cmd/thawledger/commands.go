@@ -1,0 +1,98 @@
+package main
+
+import (
+	"context"
+	"flag"
+	"fmt"
+	"runtime/debug"
+	"strings"
+)
+
+const usage = `thawledger keeps account of how much thaw each surface on frozen ground has taken.
+
+  thawledger demo                    an invented region, from CSV files to standings
+  thawledger run                     the daemon: read feeds, make indices, judge surfaces
+  thawledger settings check|show     look at the settings without starting anything
+  thawledger schema [apply]          show the database's schema, or bring it up to date
+  thawledger standing [SITE]         how surfaces stand against their design values
+  thawledger ledger                  what arrived and what became of it
+  thawledger version
+
+Each takes --help. Screening figures: local codes and a licensed engineer decide.
+`
+
+func (p program) run(ctx context.Context, args []string) error {
+	if len(args) == 0 {
+		fmt.Fprint(p.err, usage)
+		return errUsage
+	}
+	name, rest := args[0], args[1:]
+	switch name {
+	case "demo":
+		return p.demo(ctx, rest)
+	case "run":
+		return p.daemon(ctx, rest)
+	case "settings":
+		return p.settings(rest)
+	case "schema":
+		return p.schema(ctx, rest)
+	case "standing":
+		return p.standing(ctx, rest)
+	case "ledger":
+		return p.ledger(ctx, rest)
+	case "version", "--version":
+		fmt.Fprintln(p.out, version())
+		return nil
+	case "help", "-h", "--help":
+		fmt.Fprint(p.out, usage)
+		return nil
+	}
+	fmt.Fprintf(p.err, "thawledger: there is no command %q\n\n%s", name, usage)
+	return errUsage
+}
+
+// flags makes a command's flags; synopsis is shown above them.
+func (p program) flags(name, synopsis string) *flag.FlagSet {
+	f := flag.NewFlagSet(name, flag.ContinueOnError)
+	f.SetOutput(p.err)
+	f.Usage = func() {
+		fmt.Fprintf(p.err, "thawledger %s\n\n", synopsis)
+		f.PrintDefaults()
+	}
+	return f
+}
+
+// parse reads a command's flags and returns what is left, of which there may be
+// at most most.
+func parse(f *flag.FlagSet, args []string, most int) ([]string, error) {
+	if err := f.Parse(args); err != nil {
+		if err == flag.ErrHelp {
+			return nil, err
+		}
+		return nil, errUsage
+	}
+	if f.NArg() > most {
+		fmt.Fprintf(f.Output(), "thawledger: what is %q for?\n", strings.Join(f.Args()[most:], " "))
+		f.Usage()
+		return nil, errUsage
+	}
+	return f.Args(), nil
+}
+
+// version says which program this is, for the settings' and the schema's history.
+func version() string {
+	info, ok := debug.ReadBuildInfo()
+	if !ok {
+		return "thawledger (unknown build)"
+	}
+	v := "thawledger " + info.Main.Version
+	for _, s := range info.Settings {
+		switch {
+		case s.Key == "vcs.revision":
+			v += " " + s.Value[:min(12, len(s.Value))]
+		case s.Key == "vcs.modified" && s.Value == "true":
+			v += "+changes"
+		}
+	}
+	return v
+}

@@ -1,0 +1,102 @@
+package main
+
+import (
+	"context"
+	"fmt"
+	"strings"
+	"text/tabwriter"
+	"time"
+
+	"thawledger/pipeline"
+	"thawledger/pipeline/store"
+)
+
+// standing is the command `standing [SITE]`.
+func (p program) standing(ctx context.Context, args []string) error {
+	f := p.flags("standing", "standing [--settings FILE] [SITE]: how surfaces stand against their design values")
+	file := f.String("settings", "settings.yaml", "settings `file`")
+	rest, err := parse(f, args, 1)
+	if err != nil {
+		return err
+	}
+	set, err := p.load(*file)
+	if err != nil {
+		return err
+	}
+	db, done, err := p.reading(ctx, set)
+	if err != nil {
+		return err
+	}
+	defer done()
+	site := strings.Join(rest, "")
+	rows, err := db.StandingsNow(ctx, site)
+	if err != nil {
+		return err
+	}
+	if len(rows) == 0 && site != "" {
+		return fmt.Errorf("nothing is known of a site %q; `thawledger standing` lists those that are", site)
+	}
+	p.showStandings(rows)
+	return nil
+}
+
+// showStandings prints one line a surface and design value. Indices are in degC.d.
+func (p program) showStandings(rows []store.StandingNow) {
+	w := tabwriter.NewWriter(p.out, 0, 0, 2, ' ', 0)
+	fmt.Fprintln(w, "SITE / SURFACE\tINDEX OF\tSEASON\tSTATE\tINDEX degC.d\tDESIGN degC.d\tSHARE\tSINCE\tTHROUGH\tFILLED\tMISSING")
+	for _, r := range rows {
+		season := r.Kind + " " + r.Season
+		if !r.SeasonOver {
+			season += " (open)"
+		}
+		fmt.Fprintf(w, "%s / %s\t%s\t%s\t%s\t%s\t%s %.0f\t%s\t%s\t%s\t%d\t%d\n",
+			r.Site, r.Surface, described(r.IndexOf, r.Definition), season, strings.ReplaceAll(r.State, "_", " "),
+			bounds(r.IndexLowCDays, r.IndexHighCDays), limit(r.Direction), r.DesignCDays, share(r),
+			since(r), r.Day.Format(time.DateOnly), r.DaysInterpolated, r.DaysMissing)
+	}
+	w.Flush()
+	fmt.Fprintln(p.out, "\nshare: index (or its range, where missing days leave it open) against the design value. filled, missing: days of the season")
+	fmt.Fprintln(p.out, "on a straight line, and without a mean. A season's n-factor on a part of it is an approximation.")
+	fmt.Fprintln(p.out, pipeline.Caution)
+}
+
+func described(of, definition string) string {
+	if definition == string(pipeline.NotStated) {
+		return of + ", definition not stated (as curve)"
+	}
+	return of + ", " + definition
+}
+
+func limit(direction string) string {
+	if direction == string(pipeline.NotBelow) {
+		return "at least"
+	}
+	return "at most"
+}
+
+// bounds shows an index, or its range where it is open.
+func bounds(low, high float64) string {
+	if low == high {
+		return fmt.Sprintf("%.1f", low)
+	}
+	return fmt.Sprintf("%.1f to %.1f", low, high)
+}
+
+func share(r store.StandingNow) string {
+	low, high := 100*r.IndexLowCDays/r.DesignCDays, 100*r.IndexHighCDays/r.DesignCDays
+	if r.IndexLowCDays == r.IndexHighCDays {
+		return fmt.Sprintf("%.1f %%", low)
+	}
+	return fmt.Sprintf("%.1f to %.1f %%", low, high)
+}
+
+// since is the day from which the state's level has held.
+func since(r store.StandingNow) string {
+	switch {
+	case r.ExceededOn != nil:
+		return r.ExceededOn.Format(time.DateOnly)
+	case r.NearOn != nil:
+		return r.NearOn.Format(time.DateOnly)
+	}
+	return "-"
+}

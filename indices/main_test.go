@@ -1,0 +1,9 @@
+package indices
+
+import (
+	"testing"
+
+	"thawledger/pipeline/pipelinetest"
+)
+
+func TestMain(m *testing.M) { pipelinetest.Main(m) }

@@ -1,0 +1,261 @@
+package indices
+
+import (
+	"context"
+	"slices"
+	"time"
+
+	"thawledger/indices/daily"
+	"thawledger/indices/degreeday"
+	"thawledger/pipeline"
+	"thawledger/pipeline/store"
+)
+
+// bringIntoLine makes the daily values of days anew from the readings, and with
+// them everything that follows: filled days and bounds around gaps, the indices
+// of every season touched, and a line in changes. days is sorted.
+func bringIntoLine(ctx context.Context, t *store.Take, st *pipeline.Station, days []pipeline.Day) error {
+	stored, err := t.Days(ctx)
+	if err != nil {
+		return err
+	}
+	values, err := makeDays(ctx, t, st, beyond(stored, days))
+	if err != nil {
+		return err
+	}
+	return write(ctx, t, st, stored, merge(stored, values), false)
+}
+
+// beyond adds to days those that lie between them and the stored record. A day
+// past its end that had too little for a mean was not stored, and may be inside
+// the record now.
+func beyond(stored []store.DayRow, days []pipeline.Day) []pipeline.Day {
+	out := slices.Clone(days)
+	add := func(from, to pipeline.Day) {
+		for d := from; d <= to; d++ {
+			out = append(out, d)
+		}
+	}
+	first, last := days[0], days[len(days)-1]
+	if i := slices.IndexFunc(stored, func(d store.DayRow) bool { return d.Origin == pipeline.Observed }); i < 0 {
+		add(first, last)
+	} else {
+		add(first, stored[i].Day-1)
+		add(stored[len(stored)-1].Day+1, last)
+	}
+	slices.Sort(out)
+	return slices.Compact(out)
+}
+
+// makeAnew makes a station's whole record anew.
+func makeAnew(ctx context.Context, t *store.Take, st *pipeline.Station) error {
+	stored, err := t.Days(ctx)
+	if err != nil {
+		return err
+	}
+	first, last, ok, err := t.Span(ctx)
+	if err != nil {
+		return err
+	}
+	var values []daily.Value
+	if ok {
+		var days []pipeline.Day
+		for d := st.DayAt(first); d <= st.DayAt(last); d++ {
+			days = append(days, d)
+		}
+		if values, err = makeDays(ctx, t, st, days); err != nil {
+			return err
+		}
+	}
+	return write(ctx, t, st, stored, values, true)
+}
+
+// runGap is how many days without a change are read along rather than asked for
+// in two questions.
+const runGap = 40
+
+// makeDays makes the daily values of the given days from the readings.
+func makeDays(ctx context.Context, t *store.Take, st *pipeline.Station, days []pipeline.Day) ([]daily.Value, error) {
+	values := make([]daily.Value, 0, len(days))
+	var in []daily.Input
+	for i := 0; i < len(days); {
+		j := i + 1
+		for j < len(days) && days[j]-days[j-1] <= runGap {
+			j++
+		}
+		run := days[i:j]
+		next := 0 // the day of run that readings are being gathered for
+		finish := func(upTo pipeline.Day) {
+			for next < len(run) && run[next] < upTo {
+				values = append(values, daily.Make(st, run[next], in))
+				in = in[:0]
+				next++
+			}
+		}
+		err := t.EachReading(ctx, st.DayStart(run[0]), st.DayStart(run[len(run)-1]+1),
+			func(s *store.SeriesInfo, startS int64, valueC float64, q pipeline.Quality) {
+				day := st.DayAt(time.Unix(startS, 0))
+				finish(day)
+				if next < len(run) && run[next] == day {
+					in = append(in, daily.Input{Feed: s.Feed, Rank: s.Rank, Sensor: s.Sensor, Variable: s.Variable, SpanS: s.SpanS,
+						StartS: startS, ValueC: valueC, Quality: q})
+				}
+			})
+		if err != nil {
+			return nil, err
+		}
+		finish(run[len(run)-1] + 1)
+		i = j
+	}
+	return values, nil
+}
+
+// merge puts newly made values in the place of the stored ones. Stored days that
+// hold nothing of their own (filled, or never seen) are left out: they follow
+// from the others.
+func merge(stored []store.DayRow, made []daily.Value) []daily.Value {
+	out := make([]daily.Value, 0, len(stored)+len(made))
+	i := 0
+	for k := range stored {
+		for i < len(made) && made[i].Day < stored[k].Day {
+			out = append(out, made[i])
+			i++
+		}
+		if i < len(made) && made[i].Day == stored[k].Day {
+			continue // taken from made in its turn
+		}
+		if v := fromRow(&stored[k]); v.Own() {
+			out = append(out, v)
+		}
+	}
+	return append(out, made[i:]...)
+}
+
+// write completes the record, writes the days that differ from the stored ones
+// and the indices that follow from them, and leaves a line in changes. With all,
+// every index is worked out again, whether its days have changed or not: the
+// rules may have.
+func write(ctx context.Context, t *store.Take, st *pipeline.Station, stored []store.DayRow, values []daily.Value, all bool) error {
+	complete, extremes := daily.Complete(values, st.FillDays)
+	r := &record{st: st}
+	var rows []store.DayRow
+	if len(complete) > 0 {
+		r.begin = complete[0].Day
+		start := min(r.window(pipeline.Thaw, r.begin).First, r.window(pipeline.Freeze, r.begin).First)
+		rows = make([]store.DayRow, 0, int(r.begin-start)+len(complete))
+		for d := start; d < r.begin; d++ {
+			low, high := extremes.Bounds(d)
+			rows = append(rows, store.DayRow{Day: d, LowC: low, HighC: high, Quality: pipeline.QualityMissing, Rule: st.Mean})
+		}
+		for i := range complete {
+			rows = append(rows, toRow(&complete[i]))
+		}
+	}
+	gone, fresh, changed := differences(stored, rows)
+	if err := t.WriteDays(ctx, gone, fresh); err != nil {
+		return err
+	}
+	if len(rows) == 0 {
+		// Nothing usable is left, or came yet.
+		if len(stored) == 0 {
+			return nil
+		}
+		if err := t.DropRecord(ctx); err != nil {
+			return err
+		}
+		return t.AddChange(ctx, stored[0].Day)
+	}
+	r.means = make([]degreeday.DayMean, len(rows))
+	for i := range rows {
+		d := &rows[i]
+		r.means[i] = degreeday.DayMean{Day: d.Day, Origin: d.Origin, LowC: d.LowC, HighC: d.HighC}
+		if d.MeanC != nil {
+			r.means[i].MeanC = *d.MeanC
+		}
+	}
+	stretches := r.touched(changed)
+	if all {
+		stretches = []stretch{{r.begin, r.end()}}
+	}
+	if len(stretches) == 0 {
+		return nil
+	}
+	if all || len(stored) > 0 && (stored[0].Day < r.first() || stored[len(stored)-1].Day > r.end()) {
+		if err := r.dropOthers(ctx, t); err != nil {
+			return err
+		}
+	}
+	if err := r.writeIndices(ctx, t, stretches); err != nil {
+		return err
+	}
+	return t.AddChange(ctx, stretches[0].first)
+}
+
+// differences compares the stored days with those that should be: gone are the
+// days whose rows have to go, fresh the rows to be written, changed the days
+// whose indices have to be worked out again because their means, or bounds, are
+// not what they were. All are sorted.
+func differences(stored, rows []store.DayRow) (gone []pipeline.Day, fresh []store.DayRow, changed []pipeline.Day) {
+	i := 0
+	for k := range rows {
+		n := &rows[k]
+		for i < len(stored) && stored[i].Day < n.Day {
+			gone, changed = append(gone, stored[i].Day), append(changed, stored[i].Day)
+			i++
+		}
+		if i == len(stored) || stored[i].Day > n.Day {
+			fresh, changed = append(fresh, *n), append(changed, n.Day)
+			continue
+		}
+		o := &stored[i]
+		i++
+		if o.LowC != n.LowC || o.HighC != n.HighC || o.Origin != n.Origin {
+			changed = append(changed, n.Day)
+		} else if same(o, n) {
+			continue
+		}
+		gone, fresh = append(gone, n.Day), append(fresh, *n)
+	}
+	for ; i < len(stored); i++ {
+		gone, changed = append(gone, stored[i].Day), append(changed, stored[i].Day)
+	}
+	return gone, fresh, changed
+}
+
+// same says whether two rows of one day agree in everything.
+func same(a, b *store.DayRow) bool {
+	equal := func(x, y *float64) bool { return x == nil && y == nil || x != nil && y != nil && *x == *y }
+	x, y := *a, *b
+	x.MeanC, x.MaxC, x.MinC, y.MeanC, y.MaxC, y.MinC = nil, nil, nil, nil, nil, nil
+	return x == y && equal(a.MeanC, b.MeanC) && equal(a.MaxC, b.MaxC) && equal(a.MinC, b.MinC)
+}
+
+func fromRow(d *store.DayRow) daily.Value {
+	v := daily.Value{Day: d.Day, Origin: d.Origin, LowC: d.LowC, HighC: d.HighC, Rule: d.Rule, Hours: d.Hours,
+		LongestHole: d.LongestHole, Quality: d.Quality}
+	if d.MeanC != nil {
+		v.MeanC = *d.MeanC
+	}
+	if d.MaxC != nil {
+		v.MaxC, v.HasMax = *d.MaxC, true
+	}
+	if d.MinC != nil {
+		v.MinC, v.HasMin = *d.MinC, true
+	}
+	return v
+}
+
+func toRow(v *daily.Value) store.DayRow {
+	d := store.DayRow{Day: v.Day, Origin: v.Origin, LowC: v.LowC, HighC: v.HighC, Rule: v.Rule, Hours: v.Hours,
+		LongestHole: v.LongestHole, Quality: v.Quality}
+	if v.Origin != pipeline.Missing {
+		d.MeanC = &v.MeanC
+	}
+	if v.HasMax {
+		d.MaxC = &v.MaxC
+	}
+	if v.HasMin {
+		d.MinC = &v.MinC
+	}
+	return d
+}

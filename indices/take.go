@@ -1,0 +1,76 @@
+package indices
+
+import (
+	"context"
+	"errors"
+	"fmt"
+
+	"go.uber.org/zap"
+
+	"thawledger/pipeline"
+	"thawledger/pipeline/store"
+)
+
+// take works parts of one station off in one transaction. It says which parts
+// the ledger does not know; parts that are committed already are left alone.
+func (s *Service) take(ctx context.Context, station string, parts []*pipeline.Part) (unknown []bool, err error) {
+	unknown = make([]bool, len(parts))
+	err = s.DB.TakeStation(ctx, station, func(t *store.Take) error {
+		states, err := t.PartStates(ctx, parts)
+		if err != nil {
+			return err
+		}
+		var todo []*pipeline.Part
+		var todoStates []store.PartState
+		for i, p := range parts {
+			unknown[i] = !states[i].Known
+			if states[i].Known && !states[i].Committed {
+				todo, todoStates = append(todo, p), append(todoStates, states[i])
+			}
+		}
+		if len(todo) == 0 {
+			return nil
+		}
+		st, err := t.Station(ctx)
+		if err != nil {
+			return err
+		}
+		fates, days, err := t.WriteReadings(ctx, st, todo, todoStates)
+		if err != nil {
+			return err
+		}
+		if len(days) > 0 {
+			if err := bringIntoLine(ctx, t, st, days); err != nil {
+				return err
+			}
+		}
+		return t.CommitParts(ctx, todo, fates)
+	})
+	if err != nil {
+		return nil, fmt.Errorf("commit parts of station %s: %w", station, err)
+	}
+	return unknown, nil
+}
+
+// Recompute makes a station's whole record anew from its readings, by the rules
+// now in force, and takes the mark that asked for it off.
+func (s *Service) Recompute(ctx context.Context, station string) error {
+	err := s.DB.TakeStation(ctx, station, func(t *store.Take) error {
+		st, err := t.Station(ctx)
+		if err != nil {
+			return err
+		}
+		if err := makeAnew(ctx, t, st); err != nil {
+			return err
+		}
+		return t.Recomputed(ctx)
+	})
+	if errors.Is(err, store.ErrBusy) {
+		return nil // looked at again later
+	}
+	if err != nil {
+		return fmt.Errorf("make record of station %s anew: %w", station, err)
+	}
+	s.Log.Info("record made anew by changed rules", zap.String("station", station))
+	return s.Nudge()
+}

@@ -1,0 +1,152 @@
+package csvfeed
+
+import (
+	"bytes"
+	"context"
+	"fmt"
+	"io"
+	"math"
+	"path"
+	"strings"
+
+	"thawledger/ingest/normal"
+	"thawledger/pipeline"
+)
+
+// Sink takes what decoding finds, in the order of the file. An error of it ends
+// the decoding.
+type Sink interface {
+	// Reading takes a reading of a station. Its series is plan.Series()[column];
+	// its own Series is not set.
+	Reading(station string, column int, r pipeline.Reading) error
+	SetAside(row pipeline.SetAside) error
+}
+
+var byteOrderMark = []byte("\ufeff")
+
+// Decode reads a batch from r. Source is the name of the file, as a layout that
+// takes the station from it needs; folders before it do not count.
+//
+// A file that is not readable as a whole gives a *HoldError: one whose names
+// line is not there, or has not the layout's columns, whose name has no
+// station, or of whose rows more were set aside than the layout allows. The last
+// is known only at the end, when the sink has been given all readings: whoever
+// must not use them before decodes twice, the first time with a sink that keeps
+// none. A file without data rows is none of these if its names line is there.
+//
+// The counts are those of the lines that were dealt with, whatever the error.
+// Errors of r, of the sink and of the context are passed on.
+func (p *Plan) Decode(ctx context.Context, r io.Reader, source string, sink Sink) (pipeline.Counts, error) {
+	d := &decoder{plan: p, sink: sink, cells: cells{delimiter: p.delimiter, blanks: p.blanks}}
+	if err := d.begin(source); err != nil {
+		return d.counts, err
+	}
+	in := newLines(r)
+	for {
+		line, long, err := in.next(ctx)
+		if err == io.EOF {
+			break
+		}
+		if err != nil {
+			return d.counts, fmt.Errorf("read line %d: %w", d.counts.Lines+1, err)
+		}
+		if d.counts.Lines == 0 {
+			line = bytes.TrimPrefix(line, byteOrderMark)
+		}
+		if err := d.line(line, long); err != nil {
+			return d.counts, err
+		}
+	}
+	if d.counts.Lines < p.namesLine {
+		return d.counts, &HoldError{Text: fmt.Sprintf("the file ends after %d lines, and the column names are due on line %d", d.counts.Lines, p.namesLine)}
+	}
+	return d.counts, overShare(d.counts, p.maxSetAside, d.first)
+}
+
+// decoder is the state of one Decode.
+type decoder struct {
+	plan    *Plan
+	sink    Sink
+	counts  pipeline.Counts
+	cells   cells
+	columns *columns
+
+	fileID   string   // the feed's id of the station, where no column says it
+	station  *station // of fileID, or of the last row
+	lastID   []byte   // the feed's id of station, where a column says it
+	timeText []byte
+	first    string // of the rows set aside, the first: where and why
+}
+
+// begin settles what needs no line.
+func (d *decoder) begin(source string) error {
+	p := d.plan
+	if p.fileName != nil {
+		name := path.Base(source)
+		m := p.fileName.FindStringSubmatch(name)
+		if m == nil || m[1] == "" {
+			return &HoldError{Text: fmt.Sprintf("the file name %q does not say its station: it does not fit %q", name, p.fileName)}
+		}
+		d.fileID = m[1]
+	} else {
+		d.fileID = p.constant
+	}
+	if p.stationColumn == "" {
+		d.station = p.stations[d.fileID]
+	}
+	if p.namesLine == 0 {
+		return d.resolve(nil)
+	}
+	return nil
+}
+
+func (d *decoder) resolve(names []string) (err error) {
+	if d.columns, err = d.plan.resolve(names, d.counts.Lines+1); err == nil {
+		d.cells.need = d.columns.need
+	}
+	return err
+}
+
+// line deals with the next line and counts it, unless it returns an error.
+func (d *decoder) line(line []byte, long bool) error {
+	n := d.counts.Lines + 1
+	switch p := d.plan; {
+	case n == p.namesLine:
+		if err := d.names(line, long); err != nil {
+			return err
+		}
+		d.counts.Header++
+	case n < p.namesLine:
+		d.counts.Header++
+	case len(p.comment) > 0 && bytes.HasPrefix(line, p.comment):
+		d.counts.Comments++
+	case !long && d.cells.blank(line):
+		d.counts.Blank++
+	default:
+		if err := d.row(line, long); err != nil {
+			return err
+		}
+	}
+	d.counts.Lines++
+	return nil
+}
+
+// names takes the line of names.
+func (d *decoder) names(line []byte, long bool) error {
+	hold := func(text string) error {
+		return &HoldError{Line: d.counts.Lines + 1, Text: "the column names cannot be read: " + text}
+	}
+	if long {
+		return hold(tooLong)
+	}
+	d.cells.need = math.MaxInt
+	if fault, ok := d.cells.split(line); !ok {
+		return hold(fault.text(line))
+	}
+	names := make([]string, 0, d.cells.width)
+	for _, cell := range d.cells.list {
+		names = append(names, strings.ToValidUTF8(string(normal.Trim(cell)), "\ufffd"))
+	}
+	d.cells.list = nil
+	return d.resolve(names)
+}

@@ -1,0 +1,144 @@
+package ingest
+
+import (
+	"context"
+	"errors"
+	"fmt"
+
+	"go.uber.org/zap"
+
+	"thawledger/ingest/csvfeed"
+	"thawledger/pipeline"
+	"thawledger/pipeline/store"
+)
+
+// setAsideChunk is how many set-aside rows are written at a time.
+const setAsideChunk = 1000
+
+// flushParts is how many parts are published between two entries in the ledger.
+const flushParts = 200
+
+// read brings an open batch from the archive to the bus. A batch that is not
+// readable as a whole is held back, which is no error.
+func (s *Service) read(ctx context.Context, b *store.Batch) error {
+	log := s.Log.With(zap.String("feed", b.Feed), zap.String("file", b.Name), zap.Int64("batch", b.ID))
+	counts, lines, err := s.firstPass(ctx, b)
+	if hold, ok := errors.AsType[*csvfeed.HoldError](err); ok {
+		log.Error("batch held back, nothing of it is used", zap.Error(hold))
+		return s.DB.HoldBatch(ctx, b.ID, hold.Error(), counts)
+	}
+	if err != nil {
+		return err
+	}
+	if err := s.DB.ReadBatch(ctx, b.ID, counts, lines); err != nil {
+		return err
+	}
+	log.Info("batch read", zap.Int64("rows", counts.Rows), zap.Int64("read", counts.RowsRead), zap.Int64("without_value", counts.RowsWithoutValue),
+		zap.Int64("set_aside", counts.RowsSetAside), zap.Int64("readings", counts.CellsRead), zap.Int("parts", len(lines)))
+	return s.publish(ctx, b, nil)
+}
+
+// firstPass counts, keeps what is set aside and lists the parts.
+func (s *Service) firstPass(ctx context.Context, b *store.Batch) (pipeline.Counts, []store.PartLine, error) {
+	if err := s.DB.ClearBatch(ctx, b.ID); err != nil {
+		return pipeline.Counts{}, nil, err
+	}
+	var lines []store.PartLine
+	var aside []pipeline.SetAside
+	flush := func() error {
+		if len(aside) == 0 {
+			return nil
+		}
+		err := s.DB.AddSetAside(ctx, b.ID, aside)
+		aside = aside[:0]
+		return err
+	}
+	counts, err := s.decode(ctx, b, func(p *pipeline.Part) error {
+		lines = append(lines, store.PartLine{Number: p.Number, Station: p.Station, Readings: len(p.Readings)})
+		return nil
+	}, func(row pipeline.SetAside) error {
+		aside = append(aside, row)
+		if len(aside) < setAsideChunk {
+			return nil
+		}
+		return flush()
+	})
+	if flushed := flush(); err == nil {
+		err = flushed
+	}
+	return counts, lines, err
+}
+
+// publish sends the parts of a read batch: those in attempts, as the attempt
+// given there, or all of them for the first time if attempts is nil.
+func (s *Service) publish(ctx context.Context, b *store.Batch, attempts store.Attempts) error {
+	out := s.Bus.NewPublisher()
+	var sent []int32
+	flush := func() error {
+		if len(sent) == 0 {
+			return nil
+		}
+		if err := out.Flush(ctx); err != nil {
+			return err
+		}
+		err := s.DB.MarkPublished(ctx, b.ID, sent)
+		sent = sent[:0]
+		return err
+	}
+	_, err := s.decode(ctx, b, func(p *pipeline.Part) error {
+		if attempts != nil {
+			attempt, wanted := attempts[p.Number]
+			if !wanted {
+				return nil
+			}
+			p.Attempt = attempt
+		}
+		if err := out.Publish(ctx, p); err != nil {
+			return err
+		}
+		sent = append(sent, p.Number)
+		if len(sent) < flushParts {
+			return nil
+		}
+		return flush()
+	}, func(pipeline.SetAside) error { return nil })
+	if err == nil {
+		err = flush()
+	}
+	if err != nil {
+		return fmt.Errorf("publish batch %d: %w", b.ID, err)
+	}
+	return nil
+}
+
+// decode reads a batch from the archive by the layout kept with it.
+func (s *Service) decode(ctx context.Context, b *store.Batch, part func(*pipeline.Part) error, aside func(pipeline.SetAside) error) (pipeline.Counts, error) {
+	plan, err := csvfeed.Compile(b.Layout)
+	if err != nil {
+		return pipeline.Counts{}, fmt.Errorf("compile layout %s: %w", b.Layout.Name, err)
+	}
+	r, err := s.Archive.Open(b.ArchivePath)
+	if err != nil {
+		return pipeline.Counts{}, err
+	}
+	defer r.Close()
+	p := newParts(b.ID, b.Feed, plan.Series(), part)
+	counts, err := plan.Decode(ctx, r, b.Name, sink{p, aside})
+	if err != nil {
+		return counts, err
+	}
+	return counts, p.end()
+}
+
+// sink takes what decoding finds.
+type sink struct {
+	parts *parts
+	aside func(pipeline.SetAside) error
+}
+
+func (s sink) Reading(station string, column int, r pipeline.Reading) error {
+	r.Series = uint16(column)
+	return s.parts.add(station, r)
+}
+
+func (s sink) SetAside(row pipeline.SetAside) error { return s.aside(row) }

@@ -1,0 +1,207 @@
+package ingest
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"sync"
+	"time"
+
+	"go.uber.org/zap"
+
+	"thawledger/ingest/archive"
+	"thawledger/ingest/feed"
+	"thawledger/pipeline"
+	"thawledger/pipeline/bus"
+	"thawledger/pipeline/store"
+)
+
+// Config is what an ingest worker is made of.
+type Config struct {
+	DB      *store.DB
+	Bus     *bus.Bus
+	Archive *archive.Archive
+	Feeds   []pipeline.Feed
+	Log     *zap.Logger
+	Now     func() time.Time
+	// RepublishAfter is the least time after which a part that the bus has lost
+	// is published again, RepublishAllowed how often it may be published at all.
+	RepublishAfter   time.Duration
+	RepublishAllowed int
+}
+
+// Service is the ingest worker.
+type Service struct {
+	Config
+
+	// one batch is read at a time: the store is slower than the reading
+	reading sync.Mutex
+	folders map[string]*feed.Folder
+	failed  map[int64]int // how often reading an open batch failed
+	looks   map[string]look
+}
+
+// look is how the last look at a feed went.
+type look struct {
+	unsettled int
+	err       error
+}
+
+// New returns an ingest worker.
+func New(c Config) *Service {
+	s := &Service{Config: c, folders: map[string]*feed.Folder{}, failed: map[int64]int{}, looks: map[string]look{}}
+	for i := range s.Feeds {
+		f := &s.Feeds[i]
+		s.folders[f.Name] = feed.NewFolder(f.Folder, f.Pattern, f.Settle)
+	}
+	return s
+}
+
+// Run finishes what an earlier process left, looks at every feed once, so that
+// what a schedule has missed is caught up, and then on schedule, until intake
+// ends; work ends what is in hand then.
+func (s *Service) Run(intake, work context.Context) error {
+	s.finish(intake)
+	for i := range s.Feeds {
+		s.look(intake, &s.Feeds[i])
+	}
+	stop, err := s.schedule(intake)
+	if err != nil {
+		return err
+	}
+	tick := time.NewTicker(max(s.RepublishAfter/4, time.Second))
+	defer tick.Stop()
+	for {
+		select {
+		case <-intake.Done():
+			stop(work)
+			return nil
+		case <-tick.C:
+			s.finish(intake)
+		}
+	}
+}
+
+// Settled says whether every feed was looked at and nothing in it is still
+// being written. It looks again at those where something was.
+func (s *Service) Settled(ctx context.Context) (bool, error) {
+	s.reading.Lock()
+	var again []*pipeline.Feed
+	missing := 0
+	var failed []error
+	for i := range s.Feeds {
+		l, ok := s.looks[s.Feeds[i].Name]
+		switch {
+		case !ok:
+			missing++
+		case l.err != nil:
+			failed = append(failed, l.err)
+		case l.unsettled > 0:
+			again = append(again, &s.Feeds[i])
+		}
+	}
+	s.reading.Unlock()
+	for _, f := range again {
+		s.look(ctx, f)
+	}
+	return missing+len(again) == 0, errors.Join(failed...)
+}
+
+// Look looks at every feed now, whatever their schedules.
+func (s *Service) Look(ctx context.Context) error {
+	var failed []error
+	for i := range s.Feeds {
+		s.look(ctx, &s.Feeds[i])
+		s.reading.Lock()
+		failed = append(failed, s.looks[s.Feeds[i].Name].err)
+		s.reading.Unlock()
+	}
+	return errors.Join(failed...)
+}
+
+// look takes what has newly arrived in a feed's folder.
+func (s *Service) look(ctx context.Context, f *pipeline.Feed) {
+	s.reading.Lock()
+	defer s.reading.Unlock()
+	unsettled, err := s.arrivals(ctx, f)
+	if err != nil && ctx.Err() == nil {
+		s.Log.Error("feed not read to its end, to be looked at again", zap.String("feed", f.Name), zap.Error(err))
+	}
+	s.looks[f.Name] = look{unsettled, err}
+}
+
+func (s *Service) arrivals(ctx context.Context, f *pipeline.Feed) (unsettled int, err error) {
+	seen, err := s.DB.FilesSeen(ctx, f.Name, s.Archive.ID())
+	if err != nil {
+		return 0, err
+	}
+	folder := s.folders[f.Name]
+	files, unsettled, err := folder.Look(s.Now(), func(file feed.File) bool {
+		last, ok := seen[file.Name]
+		return ok && last.Bytes == file.Bytes && last.SourceTime.Equal(file.Written)
+	})
+	if err != nil {
+		return 0, fmt.Errorf("look at feed %s: %w", f.Name, err)
+	}
+	for _, file := range files {
+		if ctx.Err() != nil {
+			return unsettled, ctx.Err()
+		}
+		changed, err := s.arrival(ctx, f, folder, file)
+		if err != nil {
+			return unsettled, fmt.Errorf("take %s of feed %s: %w", file.Name, f.Name, err)
+		}
+		if changed {
+			unsettled++
+		}
+	}
+	return unsettled, nil
+}
+
+// arrival archives a file, opens its line of the ledger and reads it. It does
+// nothing, and says so, if the file changed under its hands.
+func (s *Service) arrival(ctx context.Context, f *pipeline.Feed, folder *feed.Folder, file feed.File) (changed bool, err error) {
+	r, err := folder.Open(file)
+	if err != nil {
+		return false, err
+	}
+	defer r.Close()
+	kept, err := s.Archive.Keep(archive.Origin{Feed: f.Name, Name: file.Name, SourceTime: file.Written, KeptAt: s.Now().UTC()}, r)
+	if err != nil {
+		return false, err
+	}
+	same, err := folder.Unchanged(r, file)
+	if err != nil {
+		return false, err
+	}
+	if !same || kept.Bytes != file.Bytes {
+		s.Log.Info("file changed while it was read, to be taken later", zap.String("feed", f.Name), zap.String("file", file.Name))
+		return true, nil
+	}
+	b, seen, err := s.DB.OpenBatch(ctx, store.Arrival{
+		Feed: f.Name, Name: file.Name, Hash: kept.Hash, Bytes: kept.Bytes, SourceTime: earlier(file.Written, s.Now()),
+		SeenTime: file.Written, Host: s.Archive.ID(), ArchivePath: kept.Path, Layout: &f.Layout,
+	})
+	if err != nil {
+		return false, err
+	}
+	log := s.Log.With(zap.String("feed", f.Name), zap.String("file", file.Name))
+	switch seen {
+	case store.SeenSame:
+		log.Info("file holds bytes that are known already", zap.String("sha256", kept.Hash))
+		return false, nil
+	case store.SeenWaiting:
+		log.Warn("file has returned to earlier bytes; its batch waits to be asked for", zap.String("sha256", kept.Hash))
+		return false, nil
+	}
+	return false, s.read(ctx, b)
+}
+
+// earlier keeps a source whose clock is ahead from winning over every later
+// batch.
+func earlier(a, b time.Time) time.Time {
+	if b.Before(a) {
+		return b.UTC().Truncate(time.Microsecond)
+	}
+	return a
+}
