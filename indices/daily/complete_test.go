@@ -72,6 +72,10 @@ func TestComplete(t *testing.T) {
 			want: []Value{obs(d, 1), and(filled(d+1, 4), keptPart), obs(d+2, 7)}},
 		{name: "missing day keeps what it has", fillDays: 0, in: []Value{obs(d, 1), part, obs(d+2, 7)},
 			want: []Value{obs(d, 1), and(gap(d+1, 1, 7), keptPart), obs(d+2, 7)}},
+		{name: "a day filled before, no longer", fillDays: 0, in: []Value{obs(d, 1), and(filled(d+1, 4), keptPart), obs(d+2, 7)},
+			want: []Value{obs(d, 1), and(gap(d+1, 1, 7), keptPart), obs(d+2, 7)}},
+		{name: "bounds of an observed day are its mean", fillDays: 0,
+			in: []Value{and(obs(d, 1), func(v *Value) { v.LowC, v.HighC = -80, 60 })}, want: []Value{obs(d, 1)}},
 		{name: "a day without readings, given or not", fillDays: 1,
 			in: []Value{obs(d, 1), Make(stationBy(pipeline.MeanMaxMin), d+1, nil), obs(d+2, 7)}, want: []Value{obs(d, 1), filled(d+1, 4), obs(d+2, 7)}},
 		{name: "the hourly rule, a day given", fillDays: 1,
@@ -145,7 +149,10 @@ func TestExtremes(t *testing.T) {
 		{"for 29 February, other year: 14 February", []Value{obs(on(t, "2021-02-14"), -3)}, "2032-02-29", -3, -3},
 		{"for 29 February, other year: 13 February", []Value{obs(on(t, "2021-02-13"), -3)}, "2032-02-29", -80, 60},
 		{"of 29 February", []Value{obs(on(t, "2020-02-29"), -3)}, "2031-03-15", -3, -3},
-		{"century years have none", []Value{obs(on(t, "1900-03-07"), -3)}, "2031-02-20", -3, -3},
+		{"for 1 March, leap year: 15 February", []Value{obs(on(t, "2020-02-15"), -3)}, "2031-03-01", -3, -3},
+		{"for 1 March, leap year: 14 February", []Value{obs(on(t, "2020-02-14"), -3)}, "2031-03-01", -80, 60},
+		{"century years have no 29 February", []Value{obs(on(t, "1900-03-07"), -3)}, "2031-03-22", -3, -3},
+		{"every fourth has", []Value{obs(on(t, "2000-02-14"), -3)}, "2031-03-01", -80, 60},
 		{"filled days do not count", []Value{{Day: on(t, "2031-07-01"), Origin: pipeline.Interpolated, MeanC: 5}}, "2031-07-01", -80, 60},
 	}
 	for _, c := range cases {

@@ -124,7 +124,7 @@ func chosen(rs []Input) []Input {
 		}
 		return cmp.Or(cmp.Compare(b.Rank, a.Rank), cmp.Compare(a.Feed, b.Feed), cmp.Compare(a.Sensor, b.Sensor),
 			// not between readings of different keys; so that the order of rs never matters
-			cmp.Compare(a.ValueC, b.ValueC))
+			cmp.Compare(severity(a.Quality), severity(b.Quality)), cmp.Compare(a.ValueC, b.ValueC))
 	})
 	kept := rs[:0]
 	for i := 0; i < len(rs); {
