@@ -26,6 +26,8 @@ var maxMin = []pipeline.Series{
 	{Sensor: "air", Variable: pipeline.AirTempMin, LevelM: 1.5, SpanS: 86400},
 }
 
+var arrival = time.Date(2032, 1, 1, 0, 0, 0, 0, time.UTC)
+
 // delivery is a batch that a test makes up.
 type delivery struct {
 	name     string
@@ -54,7 +56,7 @@ func (w *world) open(t testing.TB, feed string, at int64, d delivery, partSize i
 	t.Helper()
 	b, seen, err := w.OpenBatch(t.Context(), store.Arrival{
 		Feed: feed, Name: d.name, Hash: "hash of " + d.name, SourceTime: time.Unix(at, 0).UTC(), SeenTime: time.Unix(at, 0).UTC(),
-		Host: "test", ArchivePath: d.name, Layout: &pipeline.Layout{Name: "test"},
+		ArrivedAt: arrival, Host: "test", ArchivePath: d.name, Layout: &pipeline.Layout{Name: "test"},
 	})
 	if err != nil || seen != store.SeenNew {
 		t.Fatal(seen, err)
@@ -99,9 +101,24 @@ func days(first pipeline.Day, row int32, means ...float64) (out []pipeline.Readi
 	return out
 }
 
+// A date typed wrongly is kept and marked, and makes no day of the record.
+func TestDatedInTheFuture(t *testing.T) {
+	w := newWorld(t, fell)
+	first := pipeline.DayOf(2031, time.May, 1)
+	rs := append(days(first, 1, -1, 2, 3), days(pipeline.DayOf(9031, time.May, 4), 4, 5)...)
+	rs = append(rs, days(pipeline.DayOf(31, time.May, 5), 5, 5)...)
+	w.take(t, w.open(t, "fell", 1, delivery{"file", rs}, 500)...)
+	if got := w.Rows(t, `select count(*) filter (where quality = 0), count(*) filter (where quality = 3) from thaw.readings`); got[0] != "(6,4)" {
+		t.Errorf("good and wrong readings %v", got)
+	}
+	if got := w.Rows(t, `select min(day), max(day) from thaw.daily_values where origin = 1`); got[0] != "(2031-05-01,2031-05-03)" {
+		t.Errorf("record %v", got)
+	}
+}
+
 // The order of arrival, repeats and how parts are gathered leave no trace.
 func TestOrderOfArrival(t *testing.T) {
-	for seed := range uint64(6) {
+	for seed := range uint64(4) {
 		t.Run(fmt.Sprint("seed ", seed), func(t *testing.T) {
 			random := rand.New(rand.NewPCG(seed, 1))
 			first := pipeline.DayOf(2029, time.March, 20)

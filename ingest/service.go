@@ -180,7 +180,7 @@ func (s *Service) arrival(ctx context.Context, f *pipeline.Feed, folder *feed.Fo
 	}
 	b, seen, err := s.DB.OpenBatch(ctx, store.Arrival{
 		Feed: f.Name, Name: file.Name, Hash: kept.Hash, Bytes: kept.Bytes, SourceTime: earlier(file.Written, s.Now()),
-		SeenTime: file.Written, Host: s.Archive.ID(), ArchivePath: kept.Path, Layout: &f.Layout,
+		SeenTime: file.Written, ArrivedAt: s.Now().UTC(), Host: s.Archive.ID(), ArchivePath: kept.Path, Layout: &f.Layout,
 	})
 	if err != nil {
 		return false, err

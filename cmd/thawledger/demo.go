@@ -49,7 +49,7 @@ func (p program) demo(ctx context.Context, args []string) error {
 		return err
 	}
 	s := &show{program: p, files: files, set: set, dir: *dir, stay: *stay, started: started}
-	s.setDay(region.Replay - 1)
+	s.setDay(region.Replay)
 	d, err := build(ctx, set, log, s.now)
 	if err != nil {
 		return err

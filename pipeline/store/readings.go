@@ -61,12 +61,20 @@ func (t *Take) WriteReadings(ctx context.Context, st *pipeline.Station, parts []
 		}
 	}
 	days := make([]pipeline.Day, 0, len(v.fresh)+len(v.changed))
-	for _, list := range [][]row{v.fresh, v.changed} {
-		for i := range list {
-			day := st.DayAt(time.Unix(list[i].startS, 0))
-			if n := len(days); n == 0 || days[n-1] != day {
-				days = append(days, day)
-			}
+	touch := func(r *row) {
+		day := st.DayAt(time.Unix(r.startS, 0))
+		if n := len(days); n == 0 || days[n-1] != day {
+			days = append(days, day)
+		}
+	}
+	for i := range v.fresh {
+		if v.fresh[i].quality != pipeline.QualityWrong { // nothing follows from what is never used
+			touch(&v.fresh[i])
+		}
+	}
+	for i := range v.changed {
+		if v.changed[i].quality != pipeline.QualityWrong || there[key{v.changed[i].series, v.changed[i].startS}].quality != pipeline.QualityWrong {
+			touch(&v.changed[i])
 		}
 	}
 	slices.Sort(days)
@@ -121,8 +129,16 @@ func (t *Take) seriesIDs(ctx context.Context, parts []*pipeline.Part, states []P
 	return ids, read()
 }
 
+// ahead is how far after its batch's arrival a reading may be dated: clocks and
+// zones may be a day or so out, and a year typed wrongly is further.
+const ahead = 48 * time.Hour
+
+// earliestS is 1 January 1700: no series of thermometer readings is older by much.
+const earliestS = -8520336000
+
 // gather lays the readings of all parts out as rows, sorted by key and then by
-// rank, the winner of a key last.
+// rank, the winner of a key last. A reading that is dated in the future, or
+// before there were thermometers, is marked wrong: it is kept, and never used.
 func gather(parts []*pipeline.Part, states []PartState, ids map[seriesKey]int32) []row {
 	n := 0
 	for _, p := range parts {
@@ -134,7 +150,11 @@ func gather(parts []*pipeline.Part, states []PartState, ids map[seriesKey]int32)
 		for j, s := range p.Series {
 			series[j] = ids[seriesKey{states[i].FeedID, s}]
 		}
+		latest := states[i].ArrivedAt.Add(ahead).Unix()
 		for _, r := range p.Readings {
+			if r.StartS > latest || r.StartS < earliestS {
+				r.Quality = pipeline.QualityWrong
+			}
 			rows = append(rows, row{series: series[r.Series], batch: int32(p.Batch), number: r.Row, part: int32(i),
 				startS: r.StartS, order: states[i].Order, valueC: r.ValueC, quality: r.Quality})
 		}

@@ -72,12 +72,12 @@ func (t *Take) seriesInfos(ctx context.Context) (map[int32]*SeriesInfo, []int32,
 	return infos, nonNil(ids), nil
 }
 
-// Span returns the first and last instant at which a reading of the station
+// Span returns the first and last instant at which a usable reading of the station
 // starts; ok is false if it has none.
 func (t *Take) Span(ctx context.Context) (first, last time.Time, ok bool, err error) {
 	var a, b *time.Time
 	err = t.tx.QueryRow(ctx, `select min(v.start_utc), max(v.start_utc) from thaw.reading_values v
-		where v.series_id in (select series_id from thaw.series where station = $1)`, t.station).Scan(&a, &b)
+		where v.series_id in (select series_id from thaw.series where station = $1) and v.quality <> 3`, t.station).Scan(&a, &b)
 	if err != nil {
 		return first, last, false, fmt.Errorf("read span of %s: %w", t.station, err)
 	}

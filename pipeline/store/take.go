@@ -91,6 +91,7 @@ type PartState struct {
 	Committed bool
 	Stuck     bool
 	Order     int64 // of its batch
+	ArrivedAt time.Time
 	FeedID    int16
 }
 
@@ -100,7 +101,7 @@ func (t *Take) PartStates(ctx context.Context, parts []*pipeline.Part) ([]PartSt
 	for i, p := range parts {
 		batches[i], numbers[i] = p.Batch, p.Number
 	}
-	rows, err := t.tx.Query(ctx, `select u.n, p.committed_at is not null, p.stuck_at is not null, b.batch_order, b.feed_id
+	rows, err := t.tx.Query(ctx, `select u.n, p.committed_at is not null, p.stuck_at is not null, b.batch_order, b.feed_id, b.arrived_at
 		from unnest($1::bigint[], $2::int[]) with ordinality u (batch_id, part, n)
 		join thaw.batch_parts p on p.batch_id = u.batch_id and p.part = u.part
 		join thaw.batches b on b.batch_id = p.batch_id
@@ -111,7 +112,7 @@ func (t *Take) PartStates(ctx context.Context, parts []*pipeline.Part) ([]PartSt
 	out := make([]PartState, len(parts))
 	var n int64
 	var s PartState
-	_, err = pgx.ForEachRow(rows, []any{&n, &s.Committed, &s.Stuck, &s.Order, &s.FeedID}, func() error {
+	_, err = pgx.ForEachRow(rows, []any{&n, &s.Committed, &s.Stuck, &s.Order, &s.FeedID, &s.ArrivedAt}, func() error {
 		s.Known = true
 		out[n-1] = s
 		return nil

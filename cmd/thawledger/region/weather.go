@@ -40,7 +40,7 @@ var Stations = []Station{
 	{ID: "FELLMOOR", Name: "Fellmoor Flats", Lat: 69.2, Lon: -121.4, Layout: "quoted", meanC: -9.5, waveC: 19.5, warm2031C: 1.9},
 	{ID: "QUILLNESS", Name: "Quillness Head", Lat: 70.1, Lon: -119.8, Layout: "quoted", meanC: -10.5, waveC: 18, warm2031C: 0.3},
 	{ID: "TARNHOLM", Name: "Tarnholm", Lat: 68.4, Lon: -122.9, Layout: "quoted", meanC: -7.5, waveC: 20, warm2031C: 0.9,
-		gap: stretch{day(time.July, 20), day(time.July, 31)}, lateBy: 12},
+		gap: stretch{day(time.July, 20), day(time.July, 31)}, lateBy: 22},
 	{ID: "OSTERBRAE", Name: "Osterbrae", Lat: 67.8, Lon: -124.0, Layout: "fahrenheit", meanC: -5.8, waveC: 20.5, warm2031C: 1.2},
 	{ID: "HALVDEN", Name: "Halvden Landing", Lat: 68.9, Lon: -120.2, Layout: "fahrenheit", meanC: -8.6, waveC: 19, warm2031C: 0.2},
 	{ID: "SKERRY", Name: "Skerry Light", Lat: 70.6, Lon: -118.7, Layout: "tenths", meanC: -11.5, waveC: 16.5, warm2031C: 0.6,

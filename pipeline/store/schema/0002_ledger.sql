@@ -31,6 +31,7 @@ create table thaw.batches (
     batch_order        bigint not null,
     layout_hash        text not null references thaw.layouts,
     source_time        timestamptz not null,
+    arrived_at         timestamptz not null,
     host               text not null,
     archive_path       text not null,
     state              text not null check (state in ('opened', 'read', 'held_back', 'waiting')),
@@ -63,6 +64,7 @@ comment on column thaw.batches.bytes is 'Length in bytes.';
 comment on column thaw.batches.batch_order is 'Place among the batches of its feed, fixed when the line was opened: the source time in microseconds since 1970, moved on by one where two would be equal. The reading of the highest order, then row, counts.';
 comment on column thaw.batches.layout_hash is 'Layout that it was read by.';
 comment on column thaw.batches.source_time is 'When the source says that the file was written (UTC).';
+comment on column thaw.batches.arrived_at is 'When the worker found it, by its clock. Readings dated more than two days after it are marked wrong and never used.';
 comment on column thaw.batches.host is 'Host whose archive holds the bytes.';
 comment on column thaw.batches.archive_path is 'Where in the archive.';
 comment on column thaw.batches.state is 'opened: not yet read to its end; read: all parts known; held_back: not readable as a whole, nothing of it used; waiting: a return to bytes that were seen before, not used until asked for.';
