@@ -24,6 +24,21 @@ func (s *Service) finish(ctx context.Context) {
 	}
 }
 
+// reopenHeld has batches that were held back under another layout read by the
+// present one.
+func (s *Service) reopenHeld(ctx context.Context) {
+	for i := range s.Feeds {
+		f := &s.Feeds[i]
+		n, err := s.DB.ReopenHeld(ctx, s.Archive.ID(), f.Name, &f.Layout)
+		switch {
+		case err != nil && ctx.Err() == nil:
+			s.Log.Error("batches held back not opened again", zap.String("feed", f.Name), zap.Error(err))
+		case n > 0:
+			s.Log.Info("batches held back under another layout are read again", zap.String("feed", f.Name), zap.Int("batches", n))
+		}
+	}
+}
+
 func (s *Service) finishOpen(ctx context.Context) error {
 	batches, err := s.DB.OpenBatches(ctx, s.Archive.ID())
 	if err != nil {

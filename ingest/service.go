@@ -61,6 +61,7 @@ func New(c Config) *Service {
 // what a schedule has missed is caught up, and then on schedule, until intake
 // ends; work ends what is in hand then.
 func (s *Service) Run(intake, work context.Context) error {
+	s.reopenHeld(intake)
 	s.finish(intake)
 	for i := range s.Feeds {
 		s.look(intake, &s.Feeds[i])

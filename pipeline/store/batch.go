@@ -189,6 +189,35 @@ func (db *DB) HoldBatch(ctx context.Context, id int64, reason string, c pipeline
 	})
 }
 
+// ReopenHeld opens the batches of a feed again that were held back under another
+// layout than the one given, which they are to be read by now, and returns how
+// many. Nothing of a batch that is held back was used, so nothing has to be
+// taken back.
+func (db *DB) ReopenHeld(ctx context.Context, host, feed string, layout *pipeline.Layout) (int, error) {
+	text, hash, err := canonical(layout)
+	if err != nil {
+		return 0, err
+	}
+	var n int
+	err = db.within(ctx, func(tx pgx.Tx) error {
+		if err := lock(ctx, tx, lockFeed, feed); err != nil {
+			return err
+		}
+		if _, err := tx.Exec(ctx, `insert into thaw.layouts (layout_hash, layout) values ($1, $2) on conflict do nothing`, hash, text); err != nil {
+			return err
+		}
+		tag, err := tx.Exec(ctx, `update thaw.batches b set state = 'opened', reason = null, layout_hash = $3
+			from thaw.feeds f where f.feed_id = b.feed_id and f.feed = $1 and b.host = $2 and b.state = 'held_back' and b.layout_hash <> $3`,
+			feed, host, hash)
+		n = int(tag.RowsAffected())
+		return err
+	})
+	if err != nil {
+		return 0, fmt.Errorf("open batches of %s again: %w", feed, err)
+	}
+	return n, nil
+}
+
 // closeBatch writes what a batch counted.
 func closeBatch(ctx context.Context, tx pgx.Tx, id int64, state string, reason *string, c pipeline.Counts, parts int) error {
 	_, err := tx.Exec(ctx, `update thaw.batches set state = $2, reason = $3, read_at = clock_timestamp(),
