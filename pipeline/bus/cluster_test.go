@@ -3,7 +3,10 @@ package bus
 import (
 	"context"
 	"errors"
+	"io"
+	"net"
 	"strings"
+	"sync"
 	"testing"
 	"time"
 
@@ -110,6 +113,62 @@ func TestFlushEndsWithContext(t *testing.T) {
 	if err := pub.Flush(t.Context()); err != nil {
 		t.Errorf("a late answer counts for the next flush: %v", err)
 	}
+}
+
+// A line that goes dead while a taker waits is told as such, not as an empty bus.
+func TestLineCutWhileTaking(t *testing.T) {
+	server, _, _ := serve(t)
+	address, cut := relay(t, strings.TrimPrefix(server.URL(), "nats://"))
+	k := taker(t, open(t, Config{URL: "nats://" + address}))
+	took := make(chan error, 1)
+	go func() {
+		_, err := k.Take(t.Context(), 1, 2*time.Second)
+		took <- err
+	}()
+	here := taker(t, server)
+	eventually(t, "taker waits", func() bool {
+		info, err := here.from.Info(within(t, patience))
+		return err == nil && info.NumWaiting == 1
+	})
+	cut()
+	if err := <-took; !Temporary(err) || !errors.Is(err, ErrUnreachable) {
+		t.Errorf("took with %v", err)
+	}
+}
+
+// relay passes bytes on to an address until it is cut, once and for all.
+func relay(t *testing.T, to string) (address string, cut func()) {
+	l, err := net.Listen("tcp", "127.0.0.1:0")
+	if err != nil {
+		t.Fatal(err)
+	}
+	var wait sync.WaitGroup
+	ends := make(chan net.Conn, 2)
+	wait.Go(func() {
+		defer close(ends)
+		near, err := l.Accept()
+		if err != nil {
+			return
+		}
+		far, err := net.Dial("tcp", to)
+		if err != nil {
+			t.Error(err)
+			return
+		}
+		ends <- near
+		ends <- far
+		wait.Go(func() { _, _ = io.Copy(far, near) })
+		wait.Go(func() { _, _ = io.Copy(near, far) })
+	})
+	cut = sync.OnceFunc(func() {
+		_ = l.Close()
+		for end := range ends {
+			_ = end.Close()
+		}
+		wait.Wait()
+	})
+	t.Cleanup(cut)
+	return l.Addr().String(), cut
 }
 
 func TestLossIsLogged(t *testing.T) {

@@ -5,6 +5,8 @@ import (
 	"encoding/binary"
 	"errors"
 	"testing"
+
+	"thawledger/pipeline"
 )
 
 // summed appends the checksum that makes b an encoding, whatever b is.
@@ -77,13 +79,13 @@ func TestDecodeRefuses(t *testing.T) {
 		{"feed beyond the end", put(atFeed, 1, 0xFF, 0x01), ErrTruncated},
 		{"station not UTF-8", set(atStation+2, 0x28), ErrForm},
 		{"no series", put(atSeries, len(body)-atSeries, 0, 0), ErrTooLong},
-		{"many series", put(atSeries, 1, 0xF5, 0x03), ErrTooLong},
-		{"series beyond the end", put(atSeries, 1, 0xF4, 0x03), ErrTruncated},
+		{"many series", put(atSeries, 1, binary.AppendUvarint(nil, MaxSeries+1)...), ErrTooLong},
+		{"series beyond the end", put(atSeries, 1, binary.AppendUvarint(nil, MaxSeries)...), ErrTruncated},
 		{"unknown variable", set(atVariable, 99), ErrRange},
 		{"level not a number", set(atLevel, 0, 0, 0, 0, 0, 0, 0xF8, 0x7F), ErrNotFinite},
 		{"no readings", put(atReadings, len(body)-atReadings, 0), ErrTooLong},
-		{"many readings", put(atReadings, 1, 0xF5, 0x03), ErrTooLong},
-		{"readings beyond the end", put(atReadings, 1, 0xF4, 0x03), ErrTruncated},
+		{"many readings", put(atReadings, 1, binary.AppendUvarint(nil, MaxReadings+1)...), ErrTooLong},
+		{"readings beyond the end", put(atReadings, 1, binary.AppendUvarint(nil, MaxReadings)...), ErrTruncated},
 		{"series not listed", set(atPlace, 2), ErrSeries},
 		{"row 0", set(atRow, 0), ErrRange},
 		{"row beyond 31 bits", put(atRow, 1, 0x80, 0x80, 0x80, 0x80, 0x10), ErrRange},
@@ -105,14 +107,14 @@ func TestDecodeRefuses(t *testing.T) {
 // Lengths that are not there cost next to nothing.
 func TestDecodeAllocatesLittle(t *testing.T) {
 	_, whole := golden()
-	b := summed(append(bytes.Clone(whole[:atReadings]), 0xF4, 0x03))
+	b := summed(binary.AppendUvarint(bytes.Clone(whole[:atReadings]), MaxReadings))
 	if r := testing.Benchmark(func(b2 *testing.B) {
 		b2.ReportAllocs()
 		for b2.Loop() {
 			_, _ = Decode(b)
 		}
 	}); r.AllocedBytesPerOp() > 1024 {
-		t.Errorf("%d bytes allocated for %d that claim 500 readings", r.AllocedBytesPerOp(), len(b))
+		t.Errorf("%d bytes allocated for %d that claim %d readings", r.AllocedBytesPerOp(), len(b), MaxReadings)
 	}
 }
 
@@ -122,7 +124,7 @@ func FuzzDecode(f *testing.F) {
 	_, whole := golden()
 	f.Add(whole)
 	f.Add(whole[:len(whole)-sumBytes])
-	long, err := Encode(nil, part(1, 1, MaxReadings))
+	long, err := Encode(nil, part(1, 1, pipeline.PartReadings))
 	if err != nil {
 		f.Fatal(err)
 	}
@@ -148,7 +150,7 @@ func FuzzDecode(f *testing.F) {
 }
 
 func BenchmarkDecode(b *testing.B) {
-	data, err := Encode(nil, part(1, 1, MaxReadings))
+	data, err := Encode(nil, part(1, 1, pipeline.PartReadings))
 	if err != nil {
 		b.Fatal(err)
 	}
@@ -156,5 +158,5 @@ func BenchmarkDecode(b *testing.B) {
 	for b.Loop() {
 		_, _ = Decode(data)
 	}
-	b.ReportMetric(float64(b.N)*MaxReadings/b.Elapsed().Seconds(), "readings/s")
+	b.ReportMetric(float64(b.N)*pipeline.PartReadings/b.Elapsed().Seconds(), "readings/s")
 }

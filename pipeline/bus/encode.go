@@ -12,11 +12,12 @@ import (
 )
 
 // Limits of version 1 of the encoding. Encode refuses a part beyond them, and
-// Decode a message.
+// Decode a message. They stay as they are while the version does: a worker of an
+// older program must read what a newer one sends.
 const (
-	MaxTextBytes    = 255 // of a feed, a station or a sensor
-	MaxSeries       = 500 // of one part
-	MaxReadings     = pipeline.PartReadings
+	MaxTextBytes    = 255          // of a feed, a station or a sensor
+	MaxSeries       = 500          // of one part
+	MaxReadings     = 4000         // of one part; ingest sends pipeline.PartReadings at most
 	MaxEncodedBytes = 256 << 10    // of one part
 	minStartS       = -62135596800 // 0001-01-01T00:00:00Z
 	maxStartS       = 253402300799 // 9999-12-31T23:59:59Z
@@ -28,6 +29,8 @@ const (
 	minReadingBytes = 1 + 1 + 1 + 1 + 8 // short numbers, quality, value
 	sumBytes        = 4
 )
+
+const _ = uint(MaxReadings - pipeline.PartReadings) // a part as ingest makes it fits
 
 var (
 	magic      = [3]byte{'T', 'L', 'P'}
@@ -54,7 +57,7 @@ var (
 //	  1        variable, as numbered in package pipeline
 //	  8        level, m: float64 bits, little-endian
 //	  uvarint  span, s, 0 to 2^31-1
-//	uvarint  number of readings, 1 to 500; then for each
+//	uvarint  number of readings, 1 to 4000; then for each
 //	  uvarint  series: place in the list above, from 0
 //	  varint   start, s since 1970-01-01T00:00:00Z, less that of the reading
 //	           before (of the first: less 0); the years 0001 to 9999

@@ -40,7 +40,7 @@ func anyPart(t *rapid.T) *pipeline.Part {
 				StartS:  rapid.Int64Range(minStartS, maxStartS).Draw(t, "start"),
 				ValueC:  rapid.Float64().Draw(t, "value"),
 			}
-		}), 1, MaxReadings).Draw(t, "readings"),
+		}), 1, 600).Draw(t, "readings"),
 	}
 }
 
@@ -203,19 +203,48 @@ func TestEncodeRefuses(t *testing.T) {
 	}
 }
 
+// The largest part there can be fits into the bytes allowed, and comes back.
+func TestLargestPart(t *testing.T) {
+	p := &pipeline.Part{
+		Batch: math.MaxInt64, Number: math.MaxInt32, Attempt: math.MaxInt32,
+		Feed: strings.Repeat("f", MaxTextBytes), Station: strings.Repeat("s", MaxTextBytes),
+	}
+	for range MaxSeries {
+		p.Series = append(p.Series, pipeline.Series{Sensor: strings.Repeat("x", MaxTextBytes), Variable: 1, SpanS: math.MaxInt32})
+	}
+	for i := range MaxReadings {
+		r := pipeline.Reading{Series: MaxSeries - 1, Row: 1, StartS: minStartS, ValueC: math.MaxFloat64}
+		if i%2 == 0 {
+			r.Row, r.StartS = math.MaxInt32, maxStartS
+		}
+		p.Readings = append(p.Readings, r)
+	}
+	b, err := Encode(nil, p)
+	if err != nil || len(b) > MaxEncodedBytes {
+		t.Fatalf("%d bytes: %v", len(b), err)
+	}
+	back, err := Decode(b)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if diff := cmp.Diff(p, back); diff != "" {
+		t.Error(diff)
+	}
+}
+
 func TestEncodeIntoRoomAllocatesNothing(t *testing.T) {
-	p, buf := part(1, 1, MaxReadings), make([]byte, 0, MaxEncodedBytes)
+	p, buf := part(1, 1, pipeline.PartReadings), make([]byte, 0, MaxEncodedBytes)
 	if n := testing.AllocsPerRun(10, func() { _, _ = Encode(buf, p) }); n != 0 {
 		t.Errorf("%v allocations", n)
 	}
 }
 
 func BenchmarkEncode(b *testing.B) {
-	p, buf := part(1, 1, MaxReadings), []byte(nil)
+	p, buf := part(1, 1, pipeline.PartReadings), []byte(nil)
 	b.ReportAllocs()
 	for b.Loop() {
 		buf, _ = Encode(buf[:0], p)
 	}
-	b.ReportMetric(float64(b.N)*MaxReadings/b.Elapsed().Seconds(), "readings/s")
-	b.ReportMetric(float64(len(buf))/MaxReadings, "B/reading")
+	b.ReportMetric(float64(b.N)*pipeline.PartReadings/b.Elapsed().Seconds(), "readings/s")
+	b.ReportMetric(float64(len(buf))/pipeline.PartReadings, "B/reading")
 }
