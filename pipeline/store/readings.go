@@ -55,6 +55,7 @@ func (t *Take) WriteReadings(ctx context.Context, st *pipeline.Station, parts []
 		return nil, nil, err
 	}
 	v := decide(rows, there, fates)
+	t.remember(ids, v, len(there) == 0)
 	for _, step := range []func(context.Context, verdict) error{t.copyNew, t.updateChanged, t.keepReplaced} {
 		if err := step(ctx, v); err != nil {
 			return nil, nil, err

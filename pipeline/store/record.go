@@ -26,8 +26,27 @@ func (t *Take) EachReading(ctx context.Context, from, to time.Time, f func(s *Se
 	if err != nil {
 		return err
 	}
+	fromS, toS := from.Unix(), to.Unix()
+	inHandFrom, inHandTo := max(fromS, t.fresh.fromS), min(toS, t.fresh.beforeS)
+	if inHandFrom >= inHandTo {
+		return t.eachStored(ctx, infos, ids, fromS, toS, f)
+	}
+	if err := t.eachStored(ctx, infos, ids, fromS, inHandFrom, f); err != nil {
+		return err
+	}
+	for _, r := range t.fresh.between(inHandFrom, inHandTo) {
+		f(infos[r.series], r.startS, r.valueC, r.quality)
+	}
+	return t.eachStored(ctx, infos, ids, inHandTo, toS, f)
+}
+
+func (t *Take) eachStored(ctx context.Context, infos map[int32]*SeriesInfo, ids []int32, fromS, toS int64,
+	f func(s *SeriesInfo, startS int64, valueC float64, q pipeline.Quality)) error {
+	if fromS >= toS {
+		return nil
+	}
 	rows, err := t.tx.Query(ctx, `select series_id, start_utc, value_c, quality from thaw.reading_values
-		where series_id = any($1) and start_utc >= $2 and start_utc < $3 order by start_utc, series_id`, ids, from, to)
+		where series_id = any($1) and start_utc >= $2 and start_utc < $3 order by start_utc, series_id`, ids, time.Unix(fromS, 0), time.Unix(toS, 0))
 	if err != nil {
 		return fmt.Errorf("read readings of %s: %w", t.station, err)
 	}

@@ -19,6 +19,7 @@ var ErrBusy = errors.New("station is in work elsewhere")
 type Take struct {
 	tx      pgx.Tx
 	station string
+	fresh   fresh
 }
 
 // TakeStation runs f in a transaction that holds the station's lock, and
