@@ -112,7 +112,7 @@ func (d *daemon) runUntilIdle(ctx context.Context, hurry <-chan struct{}, only [
 func (d *daemon) awaitIdle(ctx context.Context, stop context.CancelFunc, feeds bool, show func(store.Pending)) error {
 	limit := time.NewTimer(d.set.Work.IdleDeadline)
 	defer limit.Stop()
-	tick := time.NewTicker(100 * time.Millisecond)
+	tick := time.NewTicker(25 * time.Millisecond)
 	defer tick.Stop()
 	var last store.Pending
 	for {
