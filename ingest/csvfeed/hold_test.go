@@ -115,7 +115,7 @@ func TestHoldErrorNamesLineAndColumn(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	_, err = plan.Decode(t.Context(), strings.NewReader("id,date,maxi,flag,mini\n"), "", &transcript{})
+	_, err = plan.Decode(t.Context(), strings.NewReader("id,date,maxi,flag,mini\n"), "", &written{})
 	hold, ok := errors.AsType[*csvfeed.HoldError](fmt.Errorf("read: %w", err))
 	if !ok || hold.Line != 1 || hold.Column != "max" {
 		t.Errorf("got %+v, want line 1, column max", hold)

@@ -112,7 +112,7 @@ func TestPlanStandsByItself(t *testing.T) {
 		t.Fatal(err)
 	}
 	text := names + "N1,2031-07-20,1,E,2\n"
-	s := &transcript{series: plan.Series()}
+	s := &written{series: plan.Series()}
 	if _, err := plan.Decode(t.Context(), strings.NewReader(text), "", s); err != nil {
 		t.Fatal(err)
 	}
@@ -120,7 +120,7 @@ func TestPlanStandsByItself(t *testing.T) {
 	clear(l.Station.Clocks)
 	clear(l.Values[0].Flag.Marks)
 	l.Time.Columns[0], l.Values[0].Column, l.Values[0].Missing[0] = "x", "x", "1"
-	again := &transcript{series: plan.Series()}
+	again := &written{series: plan.Series()}
 	if _, err := plan.Decode(t.Context(), strings.NewReader(text), "", again); err != nil {
 		t.Fatal(err)
 	}

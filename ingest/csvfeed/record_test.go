@@ -10,18 +10,18 @@ import (
 	"thawledger/pipeline"
 )
 
-// transcript writes down what a Sink is given.
-type transcript struct {
+// written writes down what a Sink is given.
+type written struct {
 	strings.Builder
 	series []pipeline.Series
 }
 
-func (s *transcript) Reading(station string, column int, r pipeline.Reading) error {
+func (s *written) Reading(station string, column int, r pipeline.Reading) error {
 	fmt.Fprintf(s, "%d %s %s %s %.6g %s\n", r.Row, station, s.series[column].Variable, r.Start().Format("2006-01-02T15:04:05"), r.ValueC, r.Quality)
 	return nil
 }
 
-func (s *transcript) SetAside(a pipeline.SetAside) error {
+func (s *written) SetAside(a pipeline.SetAside) error {
 	fmt.Fprintf(s, "! line %d row %d column %d %q %s: %s\n", a.Line, a.Row, a.Column, a.Name, a.Code, a.Text)
 	return nil
 }
@@ -34,7 +34,7 @@ func decode(t *testing.T, layout *pipeline.Layout, source string, text io.Reader
 	if err != nil {
 		t.Fatal(err)
 	}
-	s := &transcript{series: plan.Series()}
+	s := &written{series: plan.Series()}
 	c, err := plan.Decode(t.Context(), text, source, s)
 	if sums := c.Check(); sums != nil {
 		t.Error(sums)
