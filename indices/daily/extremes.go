@@ -8,6 +8,10 @@ import (
 // judgement, no source.
 const aroundDays = 15
 
+// enough is how many observed means it takes before their extremes bound
+// anything: judgement, no source.
+const enough = 10
+
 // Extremes are the lowest and the highest observed daily mean of a record for
 // every date of the year. The zero value knows none.
 type Extremes struct {
@@ -16,31 +20,32 @@ type Extremes struct {
 
 type span struct {
 	lowC, highC float64
-	known       bool
+	days        int // observed
 }
 
 func (s *span) add(o span) {
 	switch {
-	case !o.known:
-	case !s.known:
+	case o.days == 0:
+	case s.days == 0:
 		*s = o
 	default:
-		s.lowC, s.highC = min(s.lowC, o.lowC), max(s.highC, o.highC)
+		s.lowC, s.highC, s.days = min(s.lowC, o.lowC), max(s.highC, o.highC), s.days+o.days
 	}
 }
 
 // Bounds returns the lowest and the highest plausible mean of a day in degC: the
 // lowest and the highest observed mean of the record within 15 days of the same
 // month and day in any year, the day's own year too. For 29 February that is 1
-// March in other years. Where the record has none it returns -80 and 60 degC
-// (WMO guidelines on quality control for automatic weather stations, as quoted
-// elsewhere).
+// March in other years. Where the record has fewer than ten it returns -80 and
+// 60 degC (WMO guidelines on quality control for automatic weather stations, as
+// quoted elsewhere). Extremes of a record of a few years are closer together than
+// those of the climate: bounds that rest on them may be too narrow.
 func (e *Extremes) Bounds(d pipeline.Day) (lowC, highC float64) {
 	place, leap := placeOf(d)
 	if !leap && place >= leapPlace {
 		place++
 	}
-	if s := e.dates[place]; s.known {
+	if s := e.dates[place]; s.days >= enough {
 		return s.lowC, s.highC
 	}
 	return lowestC, highestC
@@ -67,7 +72,7 @@ func extremesOf(values []Value) *Extremes {
 		if v.Origin != pipeline.Observed {
 			continue
 		}
-		mean := span{lowC: v.MeanC, highC: v.MeanC, known: true}
+		mean := span{lowC: v.MeanC, highC: v.MeanC, days: 1}
 		if place, leap := placeOf(v.Day); leap {
 			inLeap[place].add(mean)
 		} else {
