@@ -1,0 +1,109 @@
+package main
+
+import (
+	"os"
+	"os/exec"
+	"path/filepath"
+	"slices"
+	"strings"
+	"testing"
+)
+
+// imports returns what each package of the module imports, tests left out.
+func imports(t *testing.T) map[string][]string {
+	t.Helper()
+	list := exec.Command("go", "list", "-f", `{{.ImportPath}} {{join .Imports " "}}`, "thawledger/...")
+	list.Stderr = os.Stderr
+	text, err := list.Output()
+	if err != nil {
+		t.Fatal(err)
+	}
+	out := map[string][]string{}
+	for line := range strings.Lines(string(text)) {
+		words := strings.Fields(line)
+		out[strings.TrimPrefix(words[0], "thawledger/")] = words[1:]
+	}
+	if len(out) < 10 {
+		t.Fatalf("only %d packages found", len(out))
+	}
+	return out
+}
+
+// A library that is spoken to in one place can be changed in one place.
+func TestLibrariesStayWhereTheyBelong(t *testing.T) {
+	belongs := map[string][]string{
+		"github.com/jackc/pgx":     {"pipeline/store", "pipeline/pipelinetest"},
+		"github.com/nats-io":       {"pipeline/bus"},
+		"github.com/robfig/cron":   {"ingest", "pipeline/settings"},
+		"go.yaml.in/yaml":          {"pipeline/settings"},
+		"os/exec":                  {"pipeline/localpg"},
+		"database/sql":             nil,
+		"go.uber.org/goleak":       {"pipeline/pipelinetest"},
+		"testing":                  {"pipeline/pipelinetest"},
+		"github.com/google/go-cmp": nil,
+	}
+	for from, list := range imports(t) {
+		for _, to := range list {
+			for library, where := range belongs {
+				if (to == library || strings.HasPrefix(to, library+"/")) && !slices.Contains(where, from) {
+					t.Errorf("%s imports %s, which belongs to %v", from, to, where)
+				}
+			}
+		}
+	}
+}
+
+// cmd -> stages -> pipeline/... -> pipeline; stages never import one another.
+func TestStagesStandApart(t *testing.T) {
+	stages := []string{"ingest", "indices", "alerts"}
+	for from, list := range imports(t) {
+		of, _, _ := strings.Cut(from, "/")
+		for _, to := range list {
+			to, ours := strings.CutPrefix(to, "thawledger/")
+			if !ours {
+				continue
+			}
+			stage, _, _ := strings.Cut(to, "/")
+			switch {
+			case of == "cmd":
+			case slices.Contains(stages, stage) && stage != of:
+				t.Errorf("%s imports %s of another stage", from, to)
+			case stage == "cmd", of == "pipeline" && stage != "pipeline":
+				t.Errorf("%s imports %s, which is above it", from, to)
+			}
+		}
+	}
+}
+
+// Arithmetic has no files, no network, no clock to wait on, and no log.
+func TestArithmeticIsPure(t *testing.T) {
+	pure := []string{"pipeline", "ingest/normal", "ingest/csvfeed", "indices/daily", "indices/degreeday", "alerts/judge"}
+	impure := []string{"os", "net", "log", "sync", "go.uber.org", "github.com", "thawledger/pipeline/"}
+	all := imports(t)
+	for _, from := range pure {
+		if all[from] == nil {
+			t.Errorf("there is no package %s", from)
+		}
+		for _, to := range all[from] {
+			for _, bad := range impure {
+				if to == bad || strings.HasPrefix(to, strings.TrimSuffix(bad, "/")+"/") {
+					t.Errorf("%s imports %s", from, to)
+				}
+			}
+		}
+	}
+}
+
+func TestTopLevel(t *testing.T) {
+	known := []string{"cmd", "pipeline", "ingest", "indices", "alerts", "deploy", "testdata", "go.mod", "go.sum", "README.md", "DEVELOPERS.md",
+		"thawledger"} // the last is what deploy/demo builds
+	entries, err := os.ReadDir(filepath.Join("..", ".."))
+	if err != nil {
+		t.Fatal(err)
+	}
+	for _, e := range entries {
+		if !strings.HasPrefix(e.Name(), ".") && !slices.Contains(known, e.Name()) {
+			t.Errorf("%s does not belong at the top", e.Name())
+		}
+	}
+}
