@@ -204,7 +204,7 @@ func (s *show) announced(ctx context.Context, day pipeline.Day) error {
 		if c.From != "" {
 			from = string(c.From) + " -> "
 		}
-		fmt.Fprintf(s.out, "  %s  %-28s %-22s %s of %.0f degC.d (%s)\n", day, c.Site+" / "+c.Surface, from+string(c.To), bounds(c.Low, c.High), c.DesignC, c.Why)
+		fmt.Fprintf(s.out, "  %s  %-28s %-22s %s of %.0f degC.d (%s)\n", day, c.Site+" / "+c.Surface, from+string(c.To), bounds(c.Low, c.High, c.DesignC, ""), c.DesignC, c.Why)
 	}
 	return nil
 }
@@ -265,7 +265,7 @@ func (s *show) exceedances(ctx context.Context) error {
 		if e.ClosedAs != nil {
 			dates = append(dates, *e.ClosedAs+" "+e.ClosedOn.Format(time.DateOnly))
 		}
-		fmt.Fprintf(s.out, "  %-28s %s: %s of %.0f degC.d\n", e.Site+" / "+e.Surface, strings.Join(dates, ", "), bounds(e.IndexLowCDays, e.IndexHighCDays), e.DesignCDays)
+		fmt.Fprintf(s.out, "  %-28s %s: %s of %.0f degC.d\n", e.Site+" / "+e.Surface, strings.Join(dates, ", "), bounds(e.IndexLowCDays, e.IndexHighCDays, e.DesignCDays, ""), e.DesignCDays)
 	}
 	return nil
 }

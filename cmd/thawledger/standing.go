@@ -51,7 +51,7 @@ func (p program) showStandings(rows []store.StandingNow) {
 		}
 		fmt.Fprintf(w, "%s / %s\t%s\t%s\t%s\t%s\t%s %.0f\t%s\t%s\t%s\t%d\t%d\n",
 			r.Site, r.Surface, described(r.IndexOf, r.Definition), season, strings.ReplaceAll(r.State, "_", " "),
-			bounds(r.IndexLowCDays, r.IndexHighCDays), limit(r.Direction), r.DesignCDays, share(r),
+			bounds(r.IndexLowCDays, r.IndexHighCDays, r.DesignCDays, ""), limit(r.Direction), r.DesignCDays, share(r),
 			since(r), r.Day.Format(time.DateOnly), r.DaysInterpolated, r.DaysMissing)
 	}
 	w.Flush()
@@ -74,20 +74,23 @@ func limit(direction string) string {
 	return "at most"
 }
 
+// farBeyond is the multiple of the design value from which a highest possible
+// index says only that nothing is known of some days.
+const farBeyond = 10
+
 // bounds shows an index, or its range where it is open.
-func bounds(low, high float64) string {
-	if low == high {
-		return fmt.Sprintf("%.1f", low)
+func bounds(low, high, design float64, unit string) string {
+	switch {
+	case low == high:
+		return fmt.Sprintf("%.1f%s", low, unit)
+	case high >= farBeyond*design:
+		return fmt.Sprintf("%.1f%s or more", low, unit)
 	}
-	return fmt.Sprintf("%.1f to %.1f", low, high)
+	return fmt.Sprintf("%.1f to %.1f%s", low, high, unit)
 }
 
 func share(r store.StandingNow) string {
-	low, high := 100*r.IndexLowCDays/r.DesignCDays, 100*r.IndexHighCDays/r.DesignCDays
-	if r.IndexLowCDays == r.IndexHighCDays {
-		return fmt.Sprintf("%.1f %%", low)
-	}
-	return fmt.Sprintf("%.1f to %.1f %%", low, high)
+	return bounds(100*r.IndexLowCDays/r.DesignCDays, 100*r.IndexHighCDays/r.DesignCDays, 100, " %")
 }
 
 // since is the day from which the state's level has held.

@@ -1,0 +1,255 @@
+package main
+
+import (
+	"bytes"
+	"context"
+	"errors"
+	"fmt"
+	"math"
+	"math/rand/v2"
+	"os"
+	"os/exec"
+	"path/filepath"
+	"strconv"
+	"strings"
+	"syscall"
+	"testing"
+	"time"
+
+	"github.com/google/go-cmp/cmp"
+	"github.com/jackc/pgx/v5"
+
+	"thawledger/pipeline/localpg"
+	"thawledger/pipeline/pipelinetest"
+)
+
+// crashes is how often the daemon is killed; every third time the database as well.
+const crashes = 24
+
+// TestKilledDuringLoad kills the daemon, and at times its private PostgreSQL
+// with it, while it loads, starts it again each time, and finds the database as
+// an undisturbed run leaves it (invariants 2 and 3).
+func TestKilledDuringLoad(t *testing.T) {
+	if testing.Short() {
+		t.Skip("takes half a minute")
+	}
+	seed := uint64(time.Now().UnixNano())
+	t.Logf("seed %d", seed)
+	random := rand.New(rand.NewPCG(seed, 1))
+	calm, rough := newCrashSite(t), newCrashSite(t)
+
+	rounds, kills, inWork, withBase := 0, 0, 0, 0
+	for ; kills < crashes; rounds++ {
+		if rounds == 3*crashes {
+			t.Fatalf("%d kills in %d rounds: the daemon is done too soon", kills, rounds)
+		}
+		rough.deliver(t, rounds)
+		p := rough.start(t)
+		openParts := 0
+		if kills%2 == 0 {
+			openParts = rough.awaitOpenParts(t, p)
+		}
+		// The moment is what is being tried out; nothing is waited for.
+		time.Sleep(time.Duration(random.Int64N(int64(120 * time.Millisecond))))
+		base := rough.postmaster(t)
+		if err := p.cmd.Process.Kill(); errors.Is(err, os.ErrProcessDone) {
+			continue // done before its time: no kill
+		} else if err != nil {
+			t.Fatal(err)
+		}
+		if kills%3 == 2 && base != 0 && syscall.Kill(base, syscall.SIGKILL) == nil {
+			withBase++
+		}
+		<-p.ended
+		if openParts > 0 {
+			inWork++
+		}
+		kills++
+	}
+	got := rough.untilIdle(t)
+	for n := range rounds {
+		calm.deliver(t, n)
+	}
+	want := calm.untilIdle(t)
+	t.Logf("%d kills, %d while parts were open, %d with the database", kills, inWork, withBase)
+	if inWork < crashes/3 || withBase < 5 {
+		t.Error("too few of them")
+	}
+	if diff := cmp.Diff(want, got); diff != "" {
+		t.Errorf("tables after kills differ (-undisturbed +killed):\n%s", diff)
+	}
+}
+
+// crashSite is a folder with settings, feeds and data.
+type crashSite struct{ dir, settings string }
+
+const crashSettings = `
+data: data
+stations:
+  - {id: FELL, latitude: 69, longitude: -120, utc_offset: "-08:00", daily_mean: hourly}
+  - {id: TARN, latitude: 70, longitude: -118, utc_offset: "-08:00", daily_mean: hourly}
+layouts:
+  hourly:
+    delimiter: ","
+    names_line: 1
+    time: {columns: [time], format: "YYYY-MM-DDThh:mmZ", zone: Z, covers: instant}
+    station: {column: station}
+    values: [{column: t, variable: air_temp, unit: degC}]
+feeds:
+  - {name: fells, folder: feed, settle: 0s, every: "@every 1h", layout: hourly}
+sites:
+  - id: strip
+    station: FELL
+    surfaces:
+      - id: gravel
+        n_factors: [{kind: thaw, value: 1.3, source: invented}]
+        design_values:
+          - {kind: thaw, definition: curve, of: surface, direction: not_above, index: 1500, unit: degC.d, source: invented}
+work: {commit_readings: 500, republish_after: 1s, idle_deadline: 2m}
+`
+
+func newCrashSite(t *testing.T) *crashSite {
+	dir := publicFolder(t)
+	s := &crashSite{dir: dir, settings: filepath.Join(dir, "settings.yaml")}
+	for _, folder := range []string{"feed", "data"} {
+		if err := os.Mkdir(filepath.Join(dir, folder), 0o755); err != nil {
+			t.Fatal(err)
+		}
+	}
+	if err := os.WriteFile(s.settings, []byte(crashSettings), 0o644); err != nil {
+		t.Fatal(err)
+	}
+	return s
+}
+
+// deliver writes a delivery: half a year of both stations, correcting a month of
+// the one before, with a row that cannot be read.
+func (s *crashSite) deliver(t *testing.T, n int) {
+	t.Helper()
+	var b strings.Builder
+	b.WriteString("station,time,t\n")
+	first := time.Date(2000, 1, 1, 8, 0, 0, 0, time.UTC).AddDate(0, 5*n, 0)
+	for at := first; at.Before(first.AddDate(0, 6, 0)); at = at.Add(time.Hour) {
+		c := -8 + 19*math.Sin(float64(at.YearDay()-110)/58) + 4*math.Sin(float64(at.Hour())/4) + float64(n)/10
+		fmt.Fprintf(&b, "FELL,%[1]s,%.1[2]f\nTARN,%[1]s,%.1[3]f\n", at.Format("2006-01-02T15:04Z"), c, c-3)
+	}
+	b.WriteString("FELL,yesterday,3\n")
+	path := filepath.Join(s.dir, "feed", fmt.Sprintf("%02d.csv", n))
+	if err := os.WriteFile(path, []byte(b.String()), 0o644); err != nil {
+		t.Fatal(err)
+	}
+	// The order of batches is that of these times.
+	written := time.Date(2026, 1, 1, n, 0, 0, 0, time.UTC)
+	if err := os.Chtimes(path, written, written); err != nil {
+		t.Fatal(err)
+	}
+}
+
+// process is a daemon running in a process of its own.
+type process struct {
+	cmd   *exec.Cmd
+	ended chan struct{}
+	err   error // once ended
+	log   string
+}
+
+func (s *crashSite) start(t *testing.T) *process {
+	t.Helper()
+	p := &process{cmd: exec.Command(os.Args[0], "run", "--until-idle", "--settings", s.settings), ended: make(chan struct{}),
+		log: filepath.Join(s.dir, "log")}
+	log, err := os.Create(p.log)
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer log.Close()
+	p.cmd.Env = append(os.Environ(), "THAWLEDGER_TEST_AS=daemon")
+	p.cmd.Stdout, p.cmd.Stderr = log, log
+	if err := p.cmd.Start(); err != nil {
+		t.Fatal(err)
+	}
+	go func() {
+		defer close(p.ended)
+		p.err = p.cmd.Wait()
+	}()
+	t.Cleanup(func() {
+		_ = p.cmd.Process.Kill()
+		<-p.ended
+	})
+	return p
+}
+
+func (p *process) said() string {
+	text, _ := os.ReadFile(p.log)
+	return string(text)
+}
+
+// untilIdle lets a daemon finish and returns what the tables then hold.
+func (s *crashSite) untilIdle(t *testing.T) []string {
+	t.Helper()
+	p := s.start(t)
+	<-p.ended
+	if p.err != nil {
+		t.Fatalf("%v\n%s", p.err, p.said())
+	}
+	var out bytes.Buffer
+	quiet := program{out: &out, err: &out}
+	set, err := quiet.load(s.settings)
+	if err != nil {
+		t.Fatal(err)
+	}
+	_, done, err := quiet.reading(t.Context(), set)
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer done()
+	return pipelinetest.Rows(t, localpg.DSN(s.postgresql(), "postgres"), "select * from thaw.fingerprint_tables()")
+}
+
+func (s *crashSite) postgresql() string { return filepath.Join(s.dir, "data", "postgresql") }
+
+// postmaster returns the private server's process; 0 if it does not run.
+func (s *crashSite) postmaster(t *testing.T) int {
+	t.Helper()
+	text, err := os.ReadFile(filepath.Join(s.postgresql(), "cluster", "postmaster.pid"))
+	if err != nil {
+		return 0
+	}
+	pid, _ := strconv.Atoi(strings.SplitN(string(text), "\n", 2)[0])
+	return pid
+}
+
+// awaitOpenParts waits until the daemon has parts on their way, and returns how
+// many; 0 if it has ended by itself before.
+func (s *crashSite) awaitOpenParts(t *testing.T, p *process) int {
+	t.Helper()
+	ctx, cancel := context.WithTimeout(t.Context(), time.Minute)
+	defer cancel()
+	for ctx.Err() == nil {
+		if n := s.openParts(ctx); n > 0 {
+			return n
+		}
+		select {
+		case <-p.ended:
+			return 0
+		default:
+		}
+	}
+	t.Fatalf("no open parts came\n%s", p.said())
+	return 0
+}
+
+// openParts is 0 as long as there is no server, or no table, to ask.
+func (s *crashSite) openParts(ctx context.Context) (n int) {
+	conn, err := pgx.Connect(ctx, localpg.DSN(s.postgresql(), "postgres"))
+	if err != nil {
+		return 0
+	}
+	defer conn.Close(context.WithoutCancel(ctx))
+	for ctx.Err() == nil {
+		err := conn.QueryRow(ctx, "select count(*) from thaw.batch_parts where committed_at is null").Scan(&n)
+		if err != nil || n > 0 {
+			return n
+		}
+	}
+	return 0
+}
