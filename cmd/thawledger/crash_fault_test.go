@@ -1,7 +1,6 @@
 package main
 
 import (
-	"bytes"
 	"context"
 	"errors"
 	"fmt"
@@ -20,7 +19,6 @@ import (
 	"github.com/jackc/pgx/v5"
 
 	"thawledger/pipeline/localpg"
-	"thawledger/pipeline/pipelinetest"
 )
 
 // crashes is how often the daemon is killed; every third time the database as well.
@@ -80,8 +78,8 @@ func TestKilledDuringLoad(t *testing.T) {
 	}
 }
 
-// crashSite is a folder with settings, feeds and data.
-type crashSite struct{ dir, settings string }
+// crashSite is a place whose program runs in a process of its own.
+type crashSite struct{ *place }
 
 const crashSettings = `
 data: data
@@ -108,23 +106,13 @@ sites:
 work: {commit_readings: 500, republish_after: 1s, idle_deadline: 2m}
 `
 
-func newCrashSite(t *testing.T) *crashSite {
-	dir := publicFolder(t)
-	s := &crashSite{dir: dir, settings: filepath.Join(dir, "settings.yaml")}
-	for _, folder := range []string{"feed", "data"} {
-		if err := os.Mkdir(filepath.Join(dir, folder), 0o755); err != nil {
-			t.Fatal(err)
-		}
-	}
-	if err := os.WriteFile(s.settings, []byte(crashSettings), 0o644); err != nil {
-		t.Fatal(err)
-	}
-	return s
+func newCrashSite(t *testing.T) crashSite {
+	return crashSite{newPlace(t, crashSettings, nil)}
 }
 
 // deliver writes a delivery: half a year of both stations, correcting a month of
 // the one before, with a row that cannot be read.
-func (s *crashSite) deliver(t *testing.T, n int) {
+func (s crashSite) deliver(t *testing.T, n int) {
 	t.Helper()
 	var b strings.Builder
 	b.WriteString("station,time,t\n")
@@ -134,10 +122,7 @@ func (s *crashSite) deliver(t *testing.T, n int) {
 		fmt.Fprintf(&b, "FELL,%[1]s,%.1[2]f\nTARN,%[1]s,%.1[3]f\n", at.Format("2006-01-02T15:04Z"), c, c-3)
 	}
 	b.WriteString("FELL,yesterday,3\n")
-	path := filepath.Join(s.dir, "feed", fmt.Sprintf("%02d.csv", n))
-	if err := os.WriteFile(path, []byte(b.String()), 0o644); err != nil {
-		t.Fatal(err)
-	}
+	path := s.write(t, fmt.Sprintf("feed/%02d.csv", n), b.String())
 	// The order of batches is that of these times.
 	written := time.Date(2026, 1, 1, n, 0, 0, 0, time.UTC)
 	if err := os.Chtimes(path, written, written); err != nil {
@@ -153,7 +138,7 @@ type process struct {
 	log   string
 }
 
-func (s *crashSite) start(t *testing.T) *process {
+func (s crashSite) start(t *testing.T) *process {
 	t.Helper()
 	p := &process{cmd: exec.Command(os.Args[0], "run", "--until-idle", "--settings", s.settings), ended: make(chan struct{}),
 		log: filepath.Join(s.dir, "log")}
@@ -184,31 +169,18 @@ func (p *process) said() string {
 }
 
 // untilIdle lets a daemon finish and returns what the tables then hold.
-func (s *crashSite) untilIdle(t *testing.T) []string {
+func (s crashSite) untilIdle(t *testing.T) []string {
 	t.Helper()
 	p := s.start(t)
 	<-p.ended
 	if p.err != nil {
 		t.Fatalf("%v\n%s", p.err, p.said())
 	}
-	var out bytes.Buffer
-	quiet := program{out: &out, err: &out}
-	set, err := quiet.load(s.settings)
-	if err != nil {
-		t.Fatal(err)
-	}
-	_, done, err := quiet.reading(t.Context(), set)
-	if err != nil {
-		t.Fatal(err)
-	}
-	defer done()
-	return pipelinetest.Rows(t, localpg.DSN(s.postgresql(), "postgres"), "select * from thaw.fingerprint_tables()")
+	return s.rows(t, "select * from thaw.fingerprint_tables()")
 }
 
-func (s *crashSite) postgresql() string { return filepath.Join(s.dir, "data", "postgresql") }
-
 // postmaster returns the private server's process; 0 if it does not run.
-func (s *crashSite) postmaster(t *testing.T) int {
+func (s crashSite) postmaster(t *testing.T) int {
 	t.Helper()
 	text, err := os.ReadFile(filepath.Join(s.postgresql(), "cluster", "postmaster.pid"))
 	if err != nil {
@@ -220,7 +192,7 @@ func (s *crashSite) postmaster(t *testing.T) int {
 
 // awaitOpenParts waits until the daemon has parts on their way, and returns how
 // many; 0 if it has ended by itself before.
-func (s *crashSite) awaitOpenParts(t *testing.T, p *process) int {
+func (s crashSite) awaitOpenParts(t *testing.T, p *process) int {
 	t.Helper()
 	ctx, cancel := context.WithTimeout(t.Context(), time.Minute)
 	defer cancel()
@@ -239,7 +211,7 @@ func (s *crashSite) awaitOpenParts(t *testing.T, p *process) int {
 }
 
 // openParts is 0 as long as there is no server, or no table, to ask.
-func (s *crashSite) openParts(ctx context.Context) (n int) {
+func (s crashSite) openParts(ctx context.Context) (n int) {
 	conn, err := pgx.Connect(ctx, localpg.DSN(s.postgresql(), "postgres"))
 	if err != nil {
 		return 0

@@ -174,18 +174,3 @@ func copyBare(b *testing.B, dsn func(string) string) time.Duration {
 	}
 	return time.Since(started)
 }
-
-// publicFolder is a temporary folder that the private server's account can
-// enter; one of testing's own could not be.
-func publicFolder(tb testing.TB) string {
-	tb.Helper()
-	dir, err := os.MkdirTemp("", "thawledger-test-")
-	if err != nil {
-		tb.Fatal(err)
-	}
-	tb.Cleanup(func() { os.RemoveAll(dir) })
-	if err := os.Chmod(dir, 0o755); err != nil {
-		tb.Fatal(err)
-	}
-	return dir
-}

@@ -1,0 +1,88 @@
+package main
+
+import (
+	"bytes"
+	"fmt"
+	"os"
+	"path/filepath"
+	"testing"
+
+	"thawledger/pipeline/localpg"
+	"thawledger/pipeline/pipelinetest"
+)
+
+// place is a folder with settings, named settings.yaml, and files beside them,
+// for the program to be run in with a private database of its own.
+type place struct{ dir, settings string }
+
+// newPlace makes a place. The names of files are relative to it. Its server is of
+// the kind that the other tests run on.
+func newPlace(tb testing.TB, settings string, files map[string]string) *place {
+	tb.Helper()
+	pipelinetest.Server(tb, "postgres") // skips, or in CI fails, where there is no server
+	if bin := os.Getenv("THAWLEDGER_TEST_PG"); bin != "" {
+		settings += fmt.Sprintf("\nstore: {private: {binaries: %q}}\n", bin)
+	}
+	p := &place{dir: publicFolder(tb)}
+	p.settings = p.write(tb, "settings.yaml", settings)
+	for name, text := range files {
+		p.write(tb, name, text)
+	}
+	return p
+}
+
+func (p *place) write(tb testing.TB, name, text string) (path string) {
+	tb.Helper()
+	path = filepath.Join(p.dir, name)
+	if err := os.MkdirAll(filepath.Dir(path), 0o755); err != nil {
+		tb.Fatal(err)
+	}
+	if err := os.WriteFile(path, []byte(text), 0o644); err != nil {
+		tb.Fatal(err)
+	}
+	return path
+}
+
+// run runs a command with the place's settings and returns what it printed.
+func (p *place) run(tb testing.TB, args ...string) string {
+	tb.Helper()
+	var out, log bytes.Buffer
+	if status := (program{out: &out, err: &log}).main(tb.Context(), append(args, "--settings", p.settings)); status != 0 {
+		tb.Fatalf("%v: status %d\n%s%s", args, status, out.String(), log.String())
+	}
+	return out.String()
+}
+
+func (p *place) postgresql() string { return filepath.Join(p.dir, "data", "postgresql") }
+
+// rows asks the place's database, whose server runs for as long as that takes.
+func (p *place) rows(tb testing.TB, sql string) []string {
+	tb.Helper()
+	var log bytes.Buffer
+	quiet := program{out: &log, err: &log}
+	set, err := quiet.load(p.settings)
+	if err != nil {
+		tb.Fatal(err)
+	}
+	_, done, err := quiet.reading(tb.Context(), set)
+	if err != nil {
+		tb.Fatalf("%v\n%s", err, log.String())
+	}
+	defer done()
+	return pipelinetest.Rows(tb, localpg.DSN(p.postgresql(), "postgres"), sql)
+}
+
+// publicFolder is a temporary folder that the private server's account can
+// enter; one of testing's own could not be.
+func publicFolder(tb testing.TB) string {
+	tb.Helper()
+	dir, err := os.MkdirTemp("", "thawledger-test-")
+	if err != nil {
+		tb.Fatal(err)
+	}
+	tb.Cleanup(func() { os.RemoveAll(dir) })
+	if err := os.Chmod(dir, 0o755); err != nil {
+		tb.Fatal(err)
+	}
+	return dir
+}
