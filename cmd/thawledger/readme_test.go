@@ -49,3 +49,38 @@ func has(t *testing.T, got, want string) {
 		t.Errorf("README.md says\n%s\nit is\n%s", want, got)
 	}
 }
+
+// DEVELOPERS.md names tests and files; they are there.
+func TestDevelopersNamesWhatThereIs(t *testing.T) {
+	root := filepath.Join("..", "..")
+	text, err := os.ReadFile(filepath.Join(root, "DEVELOPERS.md"))
+	if err != nil {
+		t.Fatal(err)
+	}
+	var code strings.Builder
+	err = filepath.WalkDir(root, func(path string, e os.DirEntry, err error) error {
+		if err == nil && strings.HasSuffix(path, "_test.go") {
+			b, err := os.ReadFile(path)
+			code.Write(b)
+			return err
+		}
+		return err
+	})
+	if err != nil {
+		t.Fatal(err)
+	}
+	names := regexp.MustCompile(`\b(Test|Fuzz)[A-Z]\w+`).FindAllString(string(text), -1)
+	if len(names) < 20 {
+		t.Errorf("only %d tests named", len(names))
+	}
+	for _, name := range names {
+		if !strings.Contains(code.String(), "func "+name+"(") {
+			t.Errorf("DEVELOPERS.md names %s, which there is not", name)
+		}
+	}
+	for _, m := range regexp.MustCompile("`((?:pipeline|ingest|indices|alerts|cmd|deploy|testdata)/[\\w./]+\\w)`").FindAllStringSubmatch(string(text), -1) {
+		if _, err := os.Stat(filepath.Join(root, m[1])); err != nil {
+			t.Errorf("DEVELOPERS.md: %v", err)
+		}
+	}
+}
