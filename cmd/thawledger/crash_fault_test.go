@@ -7,7 +7,6 @@ import (
 	"math"
 	"math/rand/v2"
 	"os"
-	"os/exec"
 	"path/filepath"
 	"strconv"
 	"strings"
@@ -42,7 +41,7 @@ func TestKilledDuringLoad(t *testing.T) {
 			t.Fatalf("%d kills in %d rounds: the daemon is done too soon", kills, rounds)
 		}
 		rough.deliver(t, rounds)
-		p := rough.start(t)
+		p := rough.start(t, "run", "--until-idle")
 		openParts := 0
 		if kills%2 == 0 {
 			openParts = rough.awaitOpenParts(t, p)
@@ -78,7 +77,7 @@ func TestKilledDuringLoad(t *testing.T) {
 	}
 }
 
-// crashSite is a place whose program runs in a process of its own.
+// crashSite is a place with deliveries for a daemon that is killed.
 type crashSite struct{ *place }
 
 const crashSettings = `
@@ -130,48 +129,10 @@ func (s crashSite) deliver(t *testing.T, n int) {
 	}
 }
 
-// process is a daemon running in a process of its own.
-type process struct {
-	cmd   *exec.Cmd
-	ended chan struct{}
-	err   error // once ended
-	log   string
-}
-
-func (s crashSite) start(t *testing.T) *process {
-	t.Helper()
-	p := &process{cmd: exec.Command(os.Args[0], "run", "--until-idle", "--settings", s.settings), ended: make(chan struct{}),
-		log: filepath.Join(s.dir, "log")}
-	log, err := os.Create(p.log)
-	if err != nil {
-		t.Fatal(err)
-	}
-	defer log.Close()
-	p.cmd.Env = append(os.Environ(), "THAWLEDGER_TEST_AS=daemon")
-	p.cmd.Stdout, p.cmd.Stderr = log, log
-	if err := p.cmd.Start(); err != nil {
-		t.Fatal(err)
-	}
-	go func() {
-		defer close(p.ended)
-		p.err = p.cmd.Wait()
-	}()
-	t.Cleanup(func() {
-		_ = p.cmd.Process.Kill()
-		<-p.ended
-	})
-	return p
-}
-
-func (p *process) said() string {
-	text, _ := os.ReadFile(p.log)
-	return string(text)
-}
-
 // untilIdle lets a daemon finish and returns what the tables then hold.
 func (s crashSite) untilIdle(t *testing.T) []string {
 	t.Helper()
-	p := s.start(t)
+	p := s.start(t, "run", "--until-idle")
 	<-p.ended
 	if p.err != nil {
 		t.Fatalf("%v\n%s", p.err, p.said())

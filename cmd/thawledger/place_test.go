@@ -4,6 +4,7 @@ import (
 	"bytes"
 	"fmt"
 	"os"
+	"os/exec"
 	"path/filepath"
 	"testing"
 
@@ -70,6 +71,45 @@ func (p *place) rows(tb testing.TB, sql string) []string {
 	}
 	defer done()
 	return pipelinetest.Rows(tb, localpg.DSN(p.postgresql(), "postgres"), sql)
+}
+
+// process is a daemon running in a process of its own.
+type process struct {
+	cmd   *exec.Cmd
+	ended chan struct{}
+	err   error // once ended
+	log   string
+}
+
+// start runs a command with the place's settings in a process of its own.
+func (p *place) start(t *testing.T, args ...string) *process {
+	t.Helper()
+	d := &process{cmd: exec.Command(os.Args[0], append(args, "--settings", p.settings)...), ended: make(chan struct{}),
+		log: filepath.Join(p.dir, "log")}
+	log, err := os.Create(d.log)
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer log.Close()
+	d.cmd.Env = append(os.Environ(), "THAWLEDGER_TEST_AS=daemon")
+	d.cmd.Stdout, d.cmd.Stderr = log, log
+	if err := d.cmd.Start(); err != nil {
+		t.Fatal(err)
+	}
+	go func() {
+		defer close(d.ended)
+		d.err = d.cmd.Wait()
+	}()
+	t.Cleanup(func() {
+		_ = d.cmd.Process.Kill()
+		<-d.ended
+	})
+	return d
+}
+
+func (p *process) said() string {
+	text, _ := os.ReadFile(p.log)
+	return string(text)
 }
 
 // publicFolder is a temporary folder that the private server's account can

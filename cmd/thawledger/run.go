@@ -89,7 +89,9 @@ func (d *daemon) run(ctx context.Context, hurry <-chan struct{}, only []string) 
 		}})
 	}
 	d.log.Info("running", zap.Int("stations", len(d.set.Stations)), zap.Int("feeds", len(d.set.Feeds)), zap.Int("sites", len(d.set.Sites)))
-	return lifecycle.Run(ctx, d.log, grace, hurry, stages...)
+	err := lifecycle.Run(ctx, d.log, grace, hurry, stages...)
+	d.log.Info("stopped", zap.Error(err))
+	return err
 }
 
 // errNotIdle says that not everything had settled in time.
