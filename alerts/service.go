@@ -12,7 +12,8 @@ import (
 
 // Bus is what the stage needs of the message bus.
 type Bus interface {
-	// Nudges says that changes may be waiting; nudges may be lost.
+	// Nudges says that changes may be waiting; nudges may be lost. The channel is
+	// closed when no more can come.
 	Nudges(ctx context.Context) (<-chan struct{}, error)
 	// Announce tells what has changed on a surface; id is its key.
 	Announce(ctx context.Context, site, surface, id string, payload []byte) error
@@ -49,7 +50,10 @@ func (s *Service) Run(ctx context.Context) error {
 		select {
 		case <-ctx.Done():
 			return nil
-		case <-nudges:
+		case _, ok := <-nudges:
+			if !ok {
+				nudges = nil
+			}
 		case <-tick.C:
 		}
 	}

@@ -1,0 +1,9 @@
+package alerts
+
+import (
+	"testing"
+
+	"thawledger/pipeline/pipelinetest"
+)
+
+func TestMain(m *testing.M) { pipelinetest.Main(m) }
