@@ -40,8 +40,11 @@ type Service struct {
 const takeParts = 120
 
 // Run takes parts until intake ends, then finishes what is in hand; work ends
-// that too. It also makes stations anew whose rules have changed.
+// that too. It also makes stations anew whose rules have changed, and withdraws
+// readings that a committed batch makes void.
 func (s *Service) Run(intake, work context.Context) error {
+	intake, end := context.WithCancel(intake)
+	defer end()
 	q := newQueue(2 * s.CommitReadings)
 	var workers sync.WaitGroup
 	for range s.Workers {
@@ -56,7 +59,7 @@ func (s *Service) Run(intake, work context.Context) error {
 			}
 		})
 	}
-	workers.Go(func() { s.recomputeMarked(intake, work) })
+	workers.Go(func() { s.chores(intake, work) })
 	for intake.Err() == nil {
 		if !q.room(intake) {
 			break
@@ -65,6 +68,7 @@ func (s *Service) Run(intake, work context.Context) error {
 		if err != nil && intake.Err() == nil {
 			s.Log.Warn("nothing taken, to be tried again", zap.Error(err))
 			if !bus.Temporary(err) {
+				end()
 				q.close()
 				workers.Wait()
 				return fmt.Errorf("take parts: %w", err)
@@ -158,23 +162,14 @@ func (s *Service) fail(ctx context.Context, d bus.Delivery, cause error) {
 	}
 }
 
-// recomputeMarked looks for stations whose rules have changed, and makes their
-// records anew.
-func (s *Service) recomputeMarked(intake, work context.Context) {
-	tick := time.NewTicker(5 * time.Second)
+// chores looks for stations whose rules have changed, and for readings to be
+// withdrawn.
+func (s *Service) chores(intake, work context.Context) {
+	tick := time.NewTicker(time.Second)
 	defer tick.Stop()
 	for {
-		stations, err := s.DB.Recomputes(work)
-		if err != nil && intake.Err() == nil {
-			s.Log.Warn("stations to be made anew not read, to be tried again", zap.Error(err))
-		}
-		for _, station := range stations {
-			if intake.Err() != nil {
-				return
-			}
-			if err := s.Recompute(work, station); err != nil {
-				s.Log.Warn("record not made anew, to be tried again", zap.String("station", station), zap.Error(err))
-			}
+		if err := errors.Join(s.recomputeMarked(intake, work), s.withdraw(intake, work)); err != nil && intake.Err() == nil {
+			s.Log.Warn("records not made anew, to be tried again", zap.Error(err))
 		}
 		select {
 		case <-intake.Done():
@@ -182,4 +177,28 @@ func (s *Service) recomputeMarked(intake, work context.Context) {
 		case <-tick.C:
 		}
 	}
+}
+
+func (s *Service) recomputeMarked(intake, work context.Context) error {
+	stations, err := s.DB.Recomputes(work)
+	failed := []error{err}
+	for _, station := range stations {
+		if intake.Err() != nil {
+			break
+		}
+		failed = append(failed, s.Recompute(work, station))
+	}
+	return errors.Join(failed...)
+}
+
+func (s *Service) withdraw(intake, work context.Context) error {
+	due, err := s.DB.Withdrawals(work)
+	failed := []error{err}
+	for _, w := range due {
+		if intake.Err() != nil {
+			break
+		}
+		failed = append(failed, s.Withdraw(work, w))
+	}
+	return errors.Join(failed...)
 }

@@ -74,3 +74,27 @@ func (s *Service) Recompute(ctx context.Context, station string) error {
 	s.Log.Info("record made anew by changed rules", zap.String("station", station))
 	return s.Nudge()
 }
+
+// Withdraw takes back the readings that a committed batch makes void, and brings
+// the station's record into line.
+func (s *Service) Withdraw(ctx context.Context, w store.Withdrawal) error {
+	var days []pipeline.Day
+	err := s.DB.TakeStation(ctx, w.Station, func(t *store.Take) error {
+		st, err := t.Station(ctx)
+		if err != nil {
+			return err
+		}
+		if days, err = t.Withdraw(ctx, st, w.Batch); err != nil || len(days) == 0 {
+			return err
+		}
+		return bringIntoLine(ctx, t, st, days)
+	})
+	if errors.Is(err, store.ErrBusy) {
+		return nil // looked at again later
+	}
+	if err != nil {
+		return fmt.Errorf("withdraw readings of station %s: %w", w.Station, err)
+	}
+	s.Log.Info("readings withdrawn", zap.String("station", w.Station), zap.Int64("by_batch", w.Batch), zap.Int("days", len(days)))
+	return s.Nudge()
+}

@@ -54,7 +54,11 @@ func (s *Service) firstPass(ctx context.Context, b *store.Batch) (pipeline.Count
 		return err
 	}
 	counts, err := s.decode(ctx, b, func(p *pipeline.Part) error {
-		lines = append(lines, store.PartLine{Number: p.Number, Station: p.Station, Readings: len(p.Readings)})
+		line := store.PartLine{Number: p.Number, Station: p.Station, Readings: len(p.Readings), FirstS: p.Readings[0].StartS, LastS: p.Readings[0].StartS}
+		for _, r := range p.Readings {
+			line.FirstS, line.LastS = min(line.FirstS, r.StartS), max(line.LastS, r.StartS)
+		}
+		lines = append(lines, line)
 		return nil
 	}, func(row pipeline.SetAside) error {
 		aside = append(aside, row)

@@ -70,7 +70,7 @@ func (s *Service) Run(intake, work context.Context) error {
 	if err != nil {
 		return err
 	}
-	tick := time.NewTicker(max(s.RepublishAfter/4, time.Second))
+	tick := time.NewTicker(min(max(s.RepublishAfter/4, time.Second), 5*time.Second))
 	defer tick.Stop()
 	for {
 		select {
@@ -182,6 +182,7 @@ func (s *Service) arrival(ctx context.Context, f *pipeline.Feed, folder *feed.Fo
 	b, seen, err := s.DB.OpenBatch(ctx, store.Arrival{
 		Feed: f.Name, Name: file.Name, Hash: kept.Hash, Bytes: kept.Bytes, SourceTime: earlier(file.Written, s.Now()),
 		SeenTime: file.Written, ArrivedAt: s.Now().UTC(), Host: s.Archive.ID(), ArchivePath: kept.Path, Layout: &f.Layout,
+		ReplacesSpan: f.ReplacesSpan,
 	})
 	if err != nil {
 		return false, err

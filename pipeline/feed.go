@@ -11,7 +11,11 @@ type Feed struct {
 	Settle   time.Duration // a file is taken when name, size and time have stood still for so long
 	Schedule string        // cron schedule, UTC
 	Rank     int           // between feeds the highest rank makes the daily value
-	Layout   Layout
+	// ReplacesSpan says that a file replaces all that the feed said of a station
+	// between the first and the last reading that the file has of it: what is
+	// absent then is withdrawn.
+	ReplacesSpan bool
+	Layout       Layout
 }
 
 // Layout says how rows become readings. A column is named as the header has it,

@@ -16,6 +16,7 @@ const usage = `thawledger keeps account of how much thaw each surface on frozen 
   thawledger schema [apply]          show the database's schema, or bring it up to date
   thawledger standing [SITE]         how surfaces stand against their design values
   thawledger ledger                  what arrived and what became of it
+  thawledger feed reread|take        read batches again by a corrected layout; use one that waits
   thawledger version
 
 Each takes --help. Screening figures: local codes and a licensed engineer decide.
@@ -40,6 +41,8 @@ func (p program) run(ctx context.Context, args []string) error {
 		return p.standing(ctx, rest)
 	case "ledger":
 		return p.ledger(ctx, rest)
+	case "feed":
+		return p.feed(ctx, rest)
 	case "version", "--version":
 		fmt.Fprintln(p.out, version())
 		return nil
@@ -62,21 +65,27 @@ func (p program) flags(name, synopsis string) *flag.FlagSet {
 	return f
 }
 
-// parse reads a command's flags and returns what is left, of which there may be
-// at most most.
-func parse(f *flag.FlagSet, args []string, most int) ([]string, error) {
-	if err := f.Parse(args); err != nil {
-		if err == flag.ErrHelp {
-			return nil, err
+// parse reads a command's flags, which may stand before and after its words, and
+// returns the words, of which there may be at most most.
+func parse(f *flag.FlagSet, args []string, most int) (words []string, err error) {
+	for rest := args; ; rest = f.Args()[1:] {
+		if err := f.Parse(rest); err != nil {
+			if err == flag.ErrHelp {
+				return nil, err
+			}
+			return nil, errUsage
 		}
-		return nil, errUsage
+		if f.NArg() == 0 {
+			break
+		}
+		words = append(words, f.Arg(0))
 	}
-	if f.NArg() > most {
-		fmt.Fprintf(f.Output(), "thawledger: what is %q for?\n", strings.Join(f.Args()[most:], " "))
+	if len(words) > most {
+		fmt.Fprintf(f.Output(), "thawledger: what is %q for?\n", strings.Join(words[most:], " "))
 		f.Usage()
 		return nil, errUsage
 	}
-	return f.Args(), nil
+	return words, nil
 }
 
 // version says which program this is, for the settings' and the schema's history.

@@ -7,6 +7,7 @@ import (
 	"os/exec"
 	"path/filepath"
 	"testing"
+	"time"
 
 	"thawledger/pipeline/localpg"
 	"thawledger/pipeline/pipelinetest"
@@ -21,15 +22,31 @@ type place struct{ dir, settings string }
 func newPlace(tb testing.TB, settings string, files map[string]string) *place {
 	tb.Helper()
 	pipelinetest.Server(tb, "postgres") // skips, or in CI fails, where there is no server
-	if bin := os.Getenv("THAWLEDGER_TEST_PG"); bin != "" {
-		settings += fmt.Sprintf("\nstore: {private: {binaries: %q}}\n", bin)
-	}
 	p := &place{dir: publicFolder(tb)}
-	p.settings = p.write(tb, "settings.yaml", settings)
+	p.settle(tb, settings)
 	for name, text := range files {
 		p.write(tb, name, text)
 	}
 	return p
+}
+
+// settle writes the place's settings.
+func (p *place) settle(tb testing.TB, settings string) {
+	tb.Helper()
+	if bin := os.Getenv("THAWLEDGER_TEST_PG"); bin != "" {
+		settings += fmt.Sprintf("\nstore: {private: {binaries: %q}}\n", bin)
+	}
+	p.settings = p.write(tb, "settings.yaml", settings)
+}
+
+// dated writes a file as if on a day of January 2026: the order of batches is
+// that of these times.
+func (p *place) dated(tb testing.TB, name, text string, day int) {
+	tb.Helper()
+	path, at := p.write(tb, name, text), time.Date(2026, 1, day, 0, 0, 0, 0, time.UTC)
+	if err := os.Chtimes(path, at, at); err != nil {
+		tb.Fatal(err)
+	}
 }
 
 func (p *place) write(tb testing.TB, name, text string) (path string) {

@@ -149,8 +149,8 @@ func (d *daemon) awaitIdle(ctx context.Context, stop context.CancelFunc, feeds b
 }
 
 func describe(p store.Pending, settled bool) string {
-	s := fmt.Sprintf("%d batches being read, %d parts not committed, %d stations to be made anew, %d changes to be judged, %d to be told",
-		p.OpenBatches, p.OpenParts, p.Recomputes, p.Changes, p.Unannounced)
+	s := fmt.Sprintf("%d batches being read, %d parts not committed, %d stations to be made anew, %d withdrawals, %d changes to be judged, %d to be told",
+		p.OpenBatches, p.OpenParts, p.Recomputes, p.Withdrawals, p.Changes, p.Unannounced)
 	if !settled {
 		s += ", and files still being written or feeds that cannot be read"
 	}

@@ -171,6 +171,20 @@ func (o *object) whole(key string, otherwise *float64, least, most float64) int 
 	return int(v)
 }
 
+// yes returns true or false; false where the key is not given.
+func (o *object) yes(key string) bool {
+	text, n := o.scalar(key)
+	switch {
+	case n == nil:
+		o.fallBack(key)
+	case text == "true":
+		return true
+	case text != "false":
+		o.r.fault(n, o.at(key), "write true or false", "%q will not do", text)
+	}
+	return false
+}
+
 // oneOf returns one of the words known.
 func oneOf[T ~string](o *object, key string, otherwise T, known ...T) T {
 	text, n := o.scalar(key)

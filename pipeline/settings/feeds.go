@@ -41,6 +41,7 @@ func (r *reader) feed(o *object, s *Settings, stations map[string]*pipeline.Stat
 	f := pipeline.Feed{
 		Name: o.id("name"), Folder: within(o.text("folder", "name the folder that files arrive in")), Pattern: o.textOr("pattern", "*.csv"),
 		Settle: o.duration("settle", 10*time.Second), Schedule: o.textOr("every", "@every 5m"), Rank: o.whole("rank", &zero, -1000, 1000),
+		ReplacesSpan: o.yes("replaces_span"),
 	}
 	if _, err := path.Match(f.Pattern, ""); err != nil {
 		r.fault(o.vals["pattern"], o.at("pattern"), "write a pattern such as *.csv", "%q is none", f.Pattern)

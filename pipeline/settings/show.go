@@ -82,6 +82,10 @@ func (t *tree) number(key string, v float64) {
 	t.key(key, &yaml.Node{Kind: yaml.ScalarNode, Value: strconv.FormatFloat(v, 'g', -1, 64)})
 }
 
+func (t *tree) yes(key string, v bool) {
+	t.key(key, &yaml.Node{Kind: yaml.ScalarNode, Value: strconv.FormatBool(v)})
+}
+
 func (t *tree) duration(key string, d time.Duration) { t.text(key, d.String()) }
 
 func (t *tree) sub(key string, f func(*tree)) {
@@ -259,6 +263,7 @@ func writeFeed(t *tree, f *pipeline.Feed) {
 	t.duration("settle", f.Settle)
 	t.text("every", f.Schedule)
 	t.number("rank", float64(f.Rank))
+	t.yes("replaces_span", f.ReplacesSpan)
 	t.text("layout", f.Layout.Name)
 	t.sub("station", func(t *tree) { writeStationColumn(t, &f.Layout.Station) })
 }

@@ -26,6 +26,9 @@ type Arrival struct {
 	Host        string
 	ArchivePath string
 	Layout      *pipeline.Layout
+	// ReplacesSpan says that the file replaces all that its feed said of each
+	// station between the first and the last reading that it has of it.
+	ReplacesSpan bool
 }
 
 // Batch is a line of the ledger.
@@ -93,13 +96,13 @@ func (db *DB) OpenBatch(ctx context.Context, a Arrival) (*Batch, Seen, error) {
 			}
 			// The smallest free number from the source time on.
 			err := tx.QueryRow(ctx, `insert into thaw.batches (feed_id, name, content_hash, bytes, batch_order, layout_hash,
-					source_time, host, archive_path, state, reason, arrived_at)
+					source_time, host, archive_path, state, reason, arrived_at, replaces_span)
 				select $1, $2, $3, $4, (select min(n) from (
 						select $5::bigint as n union all
 						select b.batch_order + 1 from thaw.batches b where b.feed_id = $1 and b.batch_order >= $5) c
 					where not exists (select 1 from thaw.batches b where b.feed_id = $1 and b.batch_order = c.n)),
-					$6, $7, $8, $9, $10, $11, $12 returning batch_id`,
-				feedID, a.Name, a.Hash, a.Bytes, a.SourceTime.UnixMicro(), hash, a.SourceTime, a.Host, a.ArchivePath, state, reason, a.ArrivedAt).Scan(&batch.ID)
+					$6, $7, $8, $9, $10, $11, $12, $13 returning batch_id`,
+				feedID, a.Name, a.Hash, a.Bytes, a.SourceTime.UnixMicro(), hash, a.SourceTime, a.Host, a.ArchivePath, state, reason, a.ArrivedAt, a.ReplacesSpan).Scan(&batch.ID)
 			if err != nil {
 				return fmt.Errorf("open batch of %s: %w", a.Name, err)
 			}

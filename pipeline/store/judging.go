@@ -17,9 +17,15 @@ type Judging struct {
 	station string
 }
 
-// ChangedStations returns the stations that have lines in changes.
+// ChangedStations returns the stations that have lines in changes. One whose
+// readings are being withdrawn waits until the end of that, unless it is stuck:
+// what is in between is nobody's news.
 func (db *DB) ChangedStations(ctx context.Context) ([]string, error) {
-	rows, err := db.pool.Query(ctx, `select station from thaw.changes group by station order by min(change_id)`)
+	rows, err := db.pool.Query(ctx, `select station from thaw.changes c
+		where not exists (select 1 from thaw.withdrawals w where w.station = c.station
+				and not exists (select 1 from thaw.batch_parts p where p.batch_id = w.batch_id and p.station = w.station and p.stuck_at is not null))
+			and not exists (select 1 from thaw.batch_parts p where p.station = c.station and p.again and p.committed_at is null and p.stuck_at is null)
+		group by station order by min(change_id)`)
 	if err != nil {
 		return nil, fmt.Errorf("read changes: %w", err)
 	}

@@ -17,6 +17,9 @@ type PartLine struct {
 	Number   int32
 	Station  string
 	Readings int
+	// FirstS and LastS are the starts of its earliest and latest reading, s since
+	// 1970-01-01T00:00:00Z.
+	FirstS, LastS int64
 }
 
 // ClearBatch forgets what an earlier, broken-off reading of an open batch set
@@ -66,14 +69,18 @@ func (db *DB) ReadBatch(ctx context.Context, id int64, c pipeline.Counts, parts 
 		return fmt.Errorf("batch %d does not add up: %w", id, err)
 	}
 	return db.within(ctx, func(tx pgx.Tx) error {
-		_, err := tx.CopyFrom(ctx, pgx.Identifier{"thaw", "batch_parts"}, []string{"batch_id", "part", "station", "readings"},
+		_, err := tx.CopyFrom(ctx, pgx.Identifier{"thaw", "batch_parts"}, []string{"batch_id", "part", "station", "readings", "first_utc", "last_utc"},
 			pgx.CopyFromSlice(len(parts), func(i int) ([]any, error) {
-				return []any{int32(id), parts[i].Number, parts[i].Station, int32(parts[i].Readings)}, nil
+				p := &parts[i]
+				return []any{int32(id), p.Number, p.Station, int32(p.Readings), time.Unix(p.FirstS, 0), time.Unix(p.LastS, 0)}, nil
 			}))
 		if err != nil {
 			return fmt.Errorf("record parts of batch %d: %w", id, err)
 		}
-		return closeBatch(ctx, tx, id, "read", nil, c, len(parts))
+		if err := closeBatch(ctx, tx, id, "read", nil, c, len(parts)); err != nil {
+			return err
+		}
+		return takeOver(ctx, tx, id)
 	})
 }
 
@@ -164,6 +171,7 @@ type Pending struct {
 	OpenBatches int // not read to their end
 	OpenParts   int // not committed, not stuck
 	Recomputes  int // stations to be made anew
+	Withdrawals int // readings to be withdrawn, by batch and station
 	Changes     int // stations to be judged
 	Unannounced int // changes to be told
 
@@ -173,7 +181,7 @@ type Pending struct {
 
 // Idle says whether nothing is left to do.
 func (p Pending) Idle() bool {
-	return p.OpenBatches == 0 && p.OpenParts == 0 && p.Recomputes == 0 && p.Changes == 0 && p.Unannounced == 0
+	return p.OpenBatches == 0 && p.OpenParts == 0 && p.Recomputes == 0 && p.Withdrawals == 0 && p.Changes == 0 && p.Unannounced == 0
 }
 
 // Pending counts what is left to do, in one statement and so at one moment.
@@ -183,11 +191,12 @@ func (db *DB) Pending(ctx context.Context) (Pending, error) {
 		(select count(*) from thaw.batches where state = 'opened'),
 		(select count(*) from thaw.batch_parts p where `+open+`),
 		(select count(*) from thaw.stations where recompute),
+		(select count(*) from thaw.withdrawals),
 		(select count(*) from thaw.changes),
 		(select count(*) from thaw.standing_changes where announce and announced_at is null),
 		(select count(*) from thaw.batches where state = 'held_back'),
-		(select count(*) from thaw.batch_parts where stuck_at is not null)`).
-		Scan(&p.OpenBatches, &p.OpenParts, &p.Recomputes, &p.Changes, &p.Unannounced, &p.HeldBack, &p.StuckParts)
+		(select count(*) from thaw.batch_parts p join thaw.batches b using (batch_id) where p.stuck_at is not null and b.state = 'read')`).
+		Scan(&p.OpenBatches, &p.OpenParts, &p.Recomputes, &p.Withdrawals, &p.Changes, &p.Unannounced, &p.HeldBack, &p.StuckParts)
 	if err != nil {
 		return p, fmt.Errorf("count what is pending: %w", err)
 	}

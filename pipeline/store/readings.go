@@ -50,11 +50,20 @@ func (t *Take) WriteReadings(ctx context.Context, st *pipeline.Station, parts []
 	if len(rows) == 0 {
 		return fates, nil, nil
 	}
+	spans, err := t.spans(ctx)
+	if err != nil {
+		return nil, nil, err
+	}
+	var v verdict
+	rows = v.passOver(rows, spans, states, fates)
+	if len(rows) == 0 {
+		return fates, nil, t.keepReplaced(ctx, v)
+	}
 	there, err := t.existing(ctx, rows)
 	if err != nil {
 		return nil, nil, err
 	}
-	v := decide(rows, there, fates)
+	v.decide(rows, there, fates)
 	t.remember(ids, v, len(there) == 0)
 	for _, step := range []func(context.Context, verdict) error{t.copyNew, t.updateChanged, t.keepReplaced} {
 		if err := step(ctx, v); err != nil {
@@ -78,8 +87,12 @@ func (t *Take) WriteReadings(ctx context.Context, st *pipeline.Station, parts []
 			touch(&v.changed[i])
 		}
 	}
+	return fates, sortedDays(days), nil
+}
+
+func sortedDays(days []pipeline.Day) []pipeline.Day {
 	slices.Sort(days)
-	return fates, slices.Compact(days), nil
+	return slices.Compact(days)
 }
 
 // seriesIDs returns the numbers of the series that the parts name, making
@@ -211,9 +224,32 @@ type verdict struct {
 
 type loser struct{ lost, winner row }
 
+// passOver takes out rows that a later batch has made void, and keeps their
+// history.
+func (v *verdict) passOver(rows []row, spans []spanInForce, states []PartState, fates []Fate) []row {
+	if len(spans) == 0 {
+		return rows
+	}
+	left := rows[:0]
+	for i := range rows {
+		r := rows[i]
+		s := void(spans, states[r.part].FeedID, &r)
+		if s == nil {
+			left = append(left, r)
+			continue
+		}
+		if n := len(rows); i+1 < n && rows[i+1].series == r.series && rows[i+1].startS == r.startS && rows[i+1].batch == r.batch {
+			fates[r.part].Repeated++
+		} else {
+			fates[r.part].Unchanged++
+		}
+		v.replaced = append(v.replaced, loser{r, row{batch: s.batch}})
+	}
+	return left
+}
+
 // decide settles who stays for each key and counts what became of each part.
-func decide(rows []row, there map[key]row, fates []Fate) verdict {
-	var v verdict
+func (v *verdict) decide(rows []row, there map[key]row, fates []Fate) {
 	for i := 0; i < len(rows); {
 		j := i + 1
 		for j < len(rows) && rows[j].series == rows[i].series && rows[j].startS == rows[i].startS {
@@ -264,7 +300,6 @@ func decide(rows []row, there map[key]row, fates []Fate) verdict {
 		}
 		i = j
 	}
-	return v
 }
 
 // lose keeps the history of a value that does not count.

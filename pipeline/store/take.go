@@ -89,7 +89,7 @@ func (t *Take) Station(ctx context.Context) (*pipeline.Station, error) {
 // PartState is what the ledger knows of a part that was taken from the bus.
 type PartState struct {
 	Known     bool // the batch and part are in the ledger
-	Committed bool
+	Committed bool // or read again since, so that nothing of it counts
 	Stuck     bool
 	Order     int64 // of its batch
 	ArrivedAt time.Time
@@ -102,7 +102,7 @@ func (t *Take) PartStates(ctx context.Context, parts []*pipeline.Part) ([]PartSt
 	for i, p := range parts {
 		batches[i], numbers[i] = p.Batch, p.Number
 	}
-	rows, err := t.tx.Query(ctx, `select u.n, p.committed_at is not null, p.stuck_at is not null, b.batch_order, b.feed_id, b.arrived_at
+	rows, err := t.tx.Query(ctx, `select u.n, p.committed_at is not null or b.state = 'reread', p.stuck_at is not null, b.batch_order, b.feed_id, b.arrived_at
 		from unnest($1::bigint[], $2::int[]) with ordinality u (batch_id, part, n)
 		join thaw.batch_parts p on p.batch_id = u.batch_id and p.part = u.part
 		join thaw.batches b on b.batch_id = p.batch_id
@@ -139,7 +139,7 @@ func (t *Take) CommitParts(ctx context.Context, parts []*pipeline.Part, fates []
 		batches[i], numbers[i] = p.Batch, p.Number
 		fresh[i], changed[i], unchanged[i], repeated[i] = int32(fates[i].New), int32(fates[i].Changed), int32(fates[i].Unchanged), int32(fates[i].Repeated)
 	}
-	_, err := t.tx.Exec(ctx, `update thaw.batch_parts p set committed_at = clock_timestamp(), stuck_at = null, reason = null,
+	_, err := t.tx.Exec(ctx, `update thaw.batch_parts p set committed_at = clock_timestamp(), stuck_at = null, reason = null, again = false,
 			readings_new = u.a, readings_changed = u.b, readings_unchanged = u.c, readings_repeated = u.d
 		from unnest($1::bigint[], $2::int[], $3::int[], $4::int[], $5::int[], $6::int[]) u (batch_id, part, a, b, c, d)
 		where p.batch_id = u.batch_id and p.part = u.part`, batches, numbers, fresh, changed, unchanged, repeated)
