@@ -180,15 +180,19 @@ func write(ctx context.Context, t *store.Take, st *pipeline.Station, stored []st
 	if len(stretches) == 0 {
 		return nil
 	}
+	from := stretches[0].first
 	if all || len(stored) > 0 && (stored[0].Day < r.first() || stored[len(stored)-1].Day > r.end()) {
 		if err := r.dropOthers(ctx, t); err != nil {
 			return err
+		}
+		if len(stored) > 0 {
+			from = min(from, stored[0].Day) // seasons that are gone have standings
 		}
 	}
 	if err := r.writeIndices(ctx, t, stretches); err != nil {
 		return err
 	}
-	return t.AddChange(ctx, stretches[0].first)
+	return t.AddChange(ctx, from)
 }
 
 // differences compares the stored days with those that should be: gone are the
