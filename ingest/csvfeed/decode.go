@@ -37,10 +37,35 @@ var byteOrderMark = []byte("\ufeff")
 // The counts are those of the lines that were dealt with, whatever the error.
 // Errors of r, of the sink and of the context are passed on.
 func (p *Plan) Decode(ctx context.Context, r io.Reader, source string, sink Sink) (pipeline.Counts, error) {
-	d := &decoder{plan: p, sink: sink, cells: cells{delimiter: p.delimiter, blanks: p.blanks}}
+	d := p.decoder(sink)
 	if err := d.begin(source); err != nil {
 		return d.counts, err
 	}
+	return d.decode(ctx, r)
+}
+
+// DecodeRest is Decode for what a file has grown by: head begins like the file,
+// gives names and columns, and has a row that can be read; linesBefore is how
+// many of the file's lines came before r. Lines are numbered as those of the file, rows from 1; the head is not
+// counted.
+func (p *Plan) DecodeRest(ctx context.Context, head io.Reader, linesBefore int64, r io.Reader, source string, sink Sink) (pipeline.Counts, error) {
+	d := p.decoder(sink)
+	if err := d.begin(source); err != nil {
+		return d.counts, err
+	}
+	if err := d.learn(ctx, head); err != nil {
+		return d.counts, err
+	}
+	d.before = linesBefore
+	return d.decode(ctx, r)
+}
+
+func (p *Plan) decoder(sink Sink) *decoder {
+	return &decoder{plan: p, sink: sink, cells: cells{delimiter: p.delimiter, blanks: p.blanks}}
+}
+
+// decode deals with all lines of r.
+func (d *decoder) decode(ctx context.Context, r io.Reader) (pipeline.Counts, error) {
 	in := newLines(r)
 	for {
 		line, long, err := in.next(ctx)
@@ -48,25 +73,56 @@ func (p *Plan) Decode(ctx context.Context, r io.Reader, source string, sink Sink
 			break
 		}
 		if err != nil {
-			return d.counts, fmt.Errorf("read line %d: %w", d.counts.Lines+1, err)
+			return d.counts, fmt.Errorf("read line %d: %w", d.number(), err)
 		}
-		if d.counts.Lines == 0 {
+		if d.number() == 1 {
 			line = bytes.TrimPrefix(line, byteOrderMark)
 		}
 		if err := d.line(line, long); err != nil {
 			return d.counts, err
 		}
 	}
-	if d.counts.Lines < p.namesLine {
+	if p := d.plan; d.before+d.counts.Lines < p.namesLine {
 		return d.counts, &HoldError{Text: fmt.Sprintf("the file ends after %d lines, and the column names are due on line %d", d.counts.Lines, p.namesLine)}
 	}
-	return d.counts, overShare(d.counts, p.maxSetAside, d.first)
+	return d.counts, overShare(d.counts, d.plan.maxSetAside, d.first)
 }
+
+// learn reads names and the number of columns from the beginning of a file.
+func (d *decoder) learn(ctx context.Context, head io.Reader) error {
+	sink := d.sink
+	d.sink = nowhere{}
+	in := newLines(head)
+	for d.columns == nil || d.columns.width == 0 {
+		line, long, err := in.next(ctx)
+		if err == io.EOF {
+			break // the rest will say
+		}
+		if err != nil {
+			return fmt.Errorf("read line %d of the beginning: %w", d.number(), err)
+		}
+		if d.number() == 1 {
+			line = bytes.TrimPrefix(line, byteOrderMark)
+		}
+		if err := d.line(line, long); err != nil {
+			return err
+		}
+	}
+	d.sink, d.counts, d.first = sink, pipeline.Counts{}, ""
+	return nil
+}
+
+// nowhere is a sink that keeps nothing.
+type nowhere struct{}
+
+func (nowhere) Reading(string, int, pipeline.Reading) error { return nil }
+func (nowhere) SetAside(pipeline.SetAside) error            { return nil }
 
 // decoder is the state of one Decode.
 type decoder struct {
 	plan    *Plan
 	sink    Sink
+	before  int64 // lines of the file before the first that is counted
 	counts  pipeline.Counts
 	cells   cells
 	columns *columns
@@ -100,8 +156,11 @@ func (d *decoder) begin(source string) error {
 	return nil
 }
 
+// number is the number of the next line in its file.
+func (d *decoder) number() int64 { return d.before + d.counts.Lines + 1 }
+
 func (d *decoder) resolve(names []string) (err error) {
-	if d.columns, err = d.plan.resolve(names, d.counts.Lines+1); err == nil {
+	if d.columns, err = d.plan.resolve(names, d.number()); err == nil {
 		d.cells.need = d.columns.need
 	}
 	return err
@@ -109,7 +168,7 @@ func (d *decoder) resolve(names []string) (err error) {
 
 // line deals with the next line and counts it, unless it returns an error.
 func (d *decoder) line(line []byte, long bool) error {
-	n := d.counts.Lines + 1
+	n := d.number()
 	switch p := d.plan; {
 	case n == p.namesLine:
 		if err := d.names(line, long); err != nil {
@@ -134,7 +193,7 @@ func (d *decoder) line(line []byte, long bool) error {
 // names takes the line of names.
 func (d *decoder) names(line []byte, long bool) error {
 	hold := func(text string) error {
-		return &HoldError{Line: d.counts.Lines + 1, Text: "the column names cannot be read: " + text}
+		return &HoldError{Line: d.number(), Text: "the column names cannot be read: " + text}
 	}
 	if long {
 		return hold(tooLong)

@@ -17,7 +17,7 @@ const tooLong = "the line is longer than 1048576 bytes, the most that a line may
 // row deals with a data row. It counts it only when nothing failed.
 func (d *decoder) row(line []byte, long bool) error {
 	if d.counts.Rows == math.MaxInt32 {
-		return &HoldError{Line: d.counts.Lines + 1, Text: "there are more than 2147483647 rows; send the file in parts"}
+		return &HoldError{Line: d.number(), Text: "there are more than 2147483647 rows; send the file in parts"}
 	}
 	code, text, startS := pipeline.LineTooLong, tooLong, int64(0)
 	if !long {
@@ -57,7 +57,7 @@ func (d *decoder) add(c *rowCounts) {
 	case c.setAside > 0:
 		n.RowsSetAside++
 		if d.first == "" {
-			d.first = fmt.Sprintf("line %d: %s", n.Lines+1, c.why)
+			d.first = fmt.Sprintf("line %d: %s", d.number(), c.why)
 		}
 	default:
 		n.RowsWithoutValue++
@@ -191,7 +191,7 @@ func (d *decoder) value(i int, r *pipeline.Reading) (missing bool, fault cellFau
 // setAside passes on a row, or the cell in the column of an index from 0; -1 is
 // the row as a whole.
 func (d *decoder) setAside(line []byte, column int, code pipeline.Reason, text string) error {
-	s := pipeline.SetAside{Line: d.counts.Lines + 1, Row: int32(d.counts.Rows + 1), Column: column + 1, Code: code, Text: text,
+	s := pipeline.SetAside{Line: d.number(), Row: int32(d.counts.Rows + 1), Column: column + 1, Code: code, Text: text,
 		Raw: string(line[:min(len(line), pipeline.MaxRaw)])}
 	if column >= 0 {
 		s.Name = d.columns.name(column)
