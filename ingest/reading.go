@@ -4,6 +4,7 @@ import (
 	"context"
 	"errors"
 	"fmt"
+	"io"
 
 	"go.uber.org/zap"
 
@@ -127,11 +128,25 @@ func (s *Service) decode(ctx context.Context, b *store.Batch, part func(*pipelin
 	}
 	defer r.Close()
 	p := newParts(b.ID, b.Feed, plan.Series(), part)
-	counts, err := plan.Decode(ctx, r, b.Name, sink{p, aside})
+	counts, err := s.decodeFrom(ctx, b, plan, r, sink{p, aside})
 	if err != nil {
 		return counts, err
 	}
 	return counts, p.end()
+}
+
+// decodeFrom reads a batch's bytes, with the beginning of its file where they are
+// only what that has grown by.
+func (s *Service) decodeFrom(ctx context.Context, b *store.Batch, plan *csvfeed.Plan, r io.Reader, to csvfeed.Sink) (pipeline.Counts, error) {
+	if b.HeadPath == "" {
+		return plan.Decode(ctx, r, b.Name, to)
+	}
+	head, err := s.Archive.Open(b.HeadPath)
+	if err != nil {
+		return pipeline.Counts{}, err
+	}
+	defer head.Close()
+	return plan.DecodeRest(ctx, head, b.LinesBefore, r, b.Name, to)
 }
 
 // sink takes what decoding finds.

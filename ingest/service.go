@@ -139,7 +139,8 @@ func (s *Service) arrivals(ctx context.Context, f *pipeline.Feed) (unsettled int
 	folder := s.folders[f.Name]
 	files, unsettled, err := folder.Look(s.Now(), func(file feed.File) bool {
 		last, ok := seen[file.Name]
-		return ok && last.Bytes == file.Bytes && last.SourceTime.Equal(file.Written)
+		same := ok && last.Bytes == file.Bytes && last.SourceTime.Equal(file.Written)
+		return same && !(f.Grows && last.Position < last.Bytes && s.stoodStill(file))
 	})
 	if err != nil {
 		return 0, fmt.Errorf("look at feed %s: %w", f.Name, err)
@@ -148,7 +149,7 @@ func (s *Service) arrivals(ctx context.Context, f *pipeline.Feed) (unsettled int
 		if ctx.Err() != nil {
 			return unsettled, ctx.Err()
 		}
-		changed, err := s.arrival(ctx, f, folder, file)
+		changed, err := s.arrival(ctx, f, folder, file, seen[file.Name])
 		if err != nil {
 			return unsettled, fmt.Errorf("take %s of feed %s: %w", file.Name, f.Name, err)
 		}
@@ -157,46 +158,6 @@ func (s *Service) arrivals(ctx context.Context, f *pipeline.Feed) (unsettled int
 		}
 	}
 	return unsettled, nil
-}
-
-// arrival archives a file, opens its line of the ledger and reads it. It does
-// nothing, and says so, if the file changed under its hands.
-func (s *Service) arrival(ctx context.Context, f *pipeline.Feed, folder *feed.Folder, file feed.File) (changed bool, err error) {
-	r, err := folder.Open(file)
-	if err != nil {
-		return false, err
-	}
-	defer r.Close()
-	kept, err := s.Archive.Keep(archive.Origin{Feed: f.Name, Name: file.Name, SourceTime: file.Written, KeptAt: s.Now().UTC()}, r)
-	if err != nil {
-		return false, err
-	}
-	same, err := folder.Unchanged(r, file)
-	if err != nil {
-		return false, err
-	}
-	if !same || kept.Bytes != file.Bytes {
-		s.Log.Info("file changed while it was read, to be taken later", zap.String("feed", f.Name), zap.String("file", file.Name))
-		return true, nil
-	}
-	b, seen, err := s.DB.OpenBatch(ctx, store.Arrival{
-		Feed: f.Name, Name: file.Name, Hash: kept.Hash, Bytes: kept.Bytes, SourceTime: earlier(file.Written, s.Now()),
-		SeenTime: file.Written, ArrivedAt: s.Now().UTC(), Host: s.Archive.ID(), ArchivePath: kept.Path, Layout: &f.Layout,
-		ReplacesSpan: f.ReplacesSpan,
-	})
-	if err != nil {
-		return false, err
-	}
-	log := s.Log.With(zap.String("feed", f.Name), zap.String("file", file.Name))
-	switch seen {
-	case store.SeenSame:
-		log.Info("file holds bytes that are known already", zap.String("sha256", kept.Hash))
-		return false, nil
-	case store.SeenWaiting:
-		log.Warn("file has returned to earlier bytes; its batch waits to be asked for", zap.String("sha256", kept.Hash))
-		return false, nil
-	}
-	return false, s.read(ctx, b)
 }
 
 // earlier keeps a source whose clock is ahead from winning over every later

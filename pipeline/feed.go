@@ -15,7 +15,10 @@ type Feed struct {
 	// between the first and the last reading that the file has of it: what is
 	// absent then is withdrawn.
 	ReplacesSpan bool
-	Layout       Layout
+	// Grows says that lines are only ever added to a file: once it was read, only
+	// what was added is.
+	Grows  bool
+	Layout Layout
 }
 
 // Layout says how rows become readings. A column is named as the header has it,

@@ -41,7 +41,7 @@ func (r *reader) feed(o *object, s *Settings, stations map[string]*pipeline.Stat
 	f := pipeline.Feed{
 		Name: o.id("name"), Folder: within(o.text("folder", "name the folder that files arrive in")), Pattern: o.textOr("pattern", "*.csv"),
 		Settle: o.duration("settle", 10*time.Second), Schedule: o.textOr("every", "@every 5m"), Rank: o.whole("rank", &zero, -1000, 1000),
-		ReplacesSpan: o.yes("replaces_span"),
+		ReplacesSpan: o.yes("replaces_span"), Grows: o.yes("grows"),
 	}
 	if _, err := path.Match(f.Pattern, ""); err != nil {
 		r.fault(o.vals["pattern"], o.at("pattern"), "write a pattern such as *.csv", "%q is none", f.Pattern)
@@ -62,6 +62,9 @@ func (r *reader) feed(o *object, s *Settings, stations map[string]*pipeline.Stat
 		if c := f.Layout.Station; c.Column+c.FileName+c.Constant == "" && f.Layout.Name != "" {
 			o.missing("station", "say here or in the layout which station a row is of")
 		}
+	}
+	if f.Grows && f.ReplacesSpan {
+		r.fault(o.keys["replaces_span"], o.at("replaces_span"), "leave one of them out", "what a file has grown by replaces nothing, and grows is given")
 	}
 	o.done()
 	r.clocks(o, &f.Layout.Station, stations)

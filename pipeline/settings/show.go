@@ -264,6 +264,7 @@ func writeFeed(t *tree, f *pipeline.Feed) {
 	t.text("every", f.Schedule)
 	t.number("rank", float64(f.Rank))
 	t.yes("replaces_span", f.ReplacesSpan)
+	t.yes("grows", f.Grows)
 	t.text("layout", f.Layout.Name)
 	t.sub("station", func(t *tree) { writeStationColumn(t, &f.Layout.Station) })
 }

@@ -20,6 +20,7 @@ type Arrival struct {
 	Name        string
 	Hash        string // SHA-256 of the bytes, hex
 	Bytes       int64
+	FileBytes   int64     // length of the file, where it is more than Bytes
 	SourceTime  time.Time // when the source wrote it; never later than now, since it fixes the order
 	SeenTime    time.Time // when the source says it wrote it
 	ArrivedAt   time.Time // when it was found
@@ -29,6 +30,20 @@ type Arrival struct {
 	// ReplacesSpan says that the file replaces all that its feed said of each
 	// station between the first and the last reading that it has of it.
 	ReplacesSpan bool
+	// Growth is nil for a file that is read whole.
+	Growth *Growth
+}
+
+// SeenBytes is the length of the file as it was seen: what has been read of a
+// growing file may be less.
+func (a *Arrival) SeenBytes() int64 { return max(a.FileBytes, a.Bytes) }
+
+// Growth says where in a growing file an arrival lies.
+type Growth struct {
+	FromByte    int64 // where it begins
+	LinesBefore int64
+	Head        int64 // batch with the file's beginning; 0 if this is it
+	Lines       int64 // of the file up to the arrival's end
 }
 
 // Batch is a line of the ledger.
@@ -39,6 +54,8 @@ type Batch struct {
 	Hash        string
 	ArchivePath string
 	Layout      *pipeline.Layout
+	HeadPath    string // archive of the file's beginning, where this batch is not that
+	LinesBefore int64  // of the file
 }
 
 // Seen says what the ledger made of an arrival.
@@ -90,35 +107,67 @@ func (db *DB) OpenBatch(ctx context.Context, a Arrival) (*Batch, Seen, error) {
 			why := "these bytes came before, and others since under this name; they are not used again until asked for"
 			reason = &why
 		}
+		growth := Growth{}
+		if a.Growth != nil {
+			growth = *a.Growth
+		}
 		if seen != SeenSame {
 			if _, err := tx.Exec(ctx, `insert into thaw.layouts (layout_hash, layout) values ($1, $2) on conflict do nothing`, hash, text); err != nil {
 				return fmt.Errorf("record layout: %w", err)
 			}
 			// The smallest free number from the source time on.
 			err := tx.QueryRow(ctx, `insert into thaw.batches (feed_id, name, content_hash, bytes, batch_order, layout_hash,
-					source_time, host, archive_path, state, reason, arrived_at, replaces_span)
+					source_time, host, archive_path, state, reason, arrived_at, replaces_span,
+					from_byte, lines_before, head_batch)
 				select $1, $2, $3, $4, (select min(n) from (
 						select $5::bigint as n union all
 						select b.batch_order + 1 from thaw.batches b where b.feed_id = $1 and b.batch_order >= $5) c
 					where not exists (select 1 from thaw.batches b where b.feed_id = $1 and b.batch_order = c.n)),
-					$6, $7, $8, $9, $10, $11, $12, $13 returning batch_id`,
-				feedID, a.Name, a.Hash, a.Bytes, a.SourceTime.UnixMicro(), hash, a.SourceTime, a.Host, a.ArchivePath, state, reason, a.ArrivedAt, a.ReplacesSpan).Scan(&batch.ID)
+					$6, $7, $8, $9, $10, $11, $12, $13, $14, $15, nullif($16::int, 0) returning batch_id`,
+				feedID, a.Name, a.Hash, a.Bytes, a.SourceTime.UnixMicro(), hash, a.SourceTime, a.Host, a.ArchivePath, state, reason, a.ArrivedAt, a.ReplacesSpan,
+				growth.FromByte, growth.LinesBefore, int32(growth.Head)).Scan(&batch.ID)
 			if err != nil {
 				return fmt.Errorf("open batch of %s: %w", a.Name, err)
 			}
 		}
-		return markSeen(ctx, tx, feedID, a)
+		if growth.Head != 0 {
+			if err := tx.QueryRow(ctx, `select archive_path from thaw.batches where batch_id = $1`, growth.Head).Scan(&batch.HeadPath); err != nil {
+				return fmt.Errorf("find beginning of %s: %w", a.Name, err)
+			}
+		} else if a.Growth != nil {
+			growth.Head = batch.ID
+		}
+		batch.LinesBefore = growth.LinesBefore
+		return markSeen(ctx, tx, feedID, a, growth)
 	})
 	return batch, seen, err
 }
 
-func markSeen(ctx context.Context, tx pgx.Tx, feedID int16, a Arrival) error {
-	_, err := tx.Exec(ctx, `insert into thaw.feed_files (feed_id, host, name, bytes, source_time, content_hash)
-		values ($1, $2, $3, $4, $5, $6) on conflict (feed_id, host, name) do update
-		set bytes = excluded.bytes, source_time = excluded.source_time, content_hash = excluded.content_hash, seen_at = clock_timestamp()`,
-		feedID, a.Host, a.Name, a.Bytes, a.SeenTime, a.Hash)
+func markSeen(ctx context.Context, tx pgx.Tx, feedID int16, a Arrival, g Growth) error {
+	hash := ""
+	if a.Growth != nil {
+		hash = a.Hash
+	}
+	_, err := tx.Exec(ctx, `insert into thaw.feed_files (feed_id, host, name, bytes, source_time, content_hash,
+			position, position_hash, position_lines, head_batch)
+		values ($1, $2, $3, $4, $5, $6, $7, $8, $9, nullif($10::int, 0)) on conflict (feed_id, host, name) do update
+		set bytes = excluded.bytes, source_time = excluded.source_time, content_hash = excluded.content_hash, seen_at = clock_timestamp(),
+			position = excluded.position, position_hash = excluded.position_hash, position_lines = excluded.position_lines,
+			head_batch = excluded.head_batch`,
+		feedID, a.Host, a.Name, a.SeenBytes(), a.SeenTime, a.Hash, g.FromByte+a.Bytes, hash, g.Lines, int32(g.Head))
 	if err != nil {
 		return fmt.Errorf("record sight of %s: %w", a.Name, err)
+	}
+	return nil
+}
+
+// SawFile records the sight of a growing file of which nothing more can be read
+// yet; what is known of it stays.
+func (db *DB) SawFile(ctx context.Context, feed, host, name string, bytes int64, seenTime time.Time) error {
+	_, err := db.pool.Exec(ctx, `update thaw.feed_files set bytes = $4, source_time = $5, seen_at = clock_timestamp()
+		where feed_id = (select feed_id from thaw.feeds where feed = $1) and host = $2 and name = $3`, feed, host, name, bytes, seenTime)
+	if err != nil {
+		return fmt.Errorf("record sight of %s: %w", name, err)
 	}
 	return nil
 }
@@ -138,12 +187,21 @@ type FileSeen struct {
 	Bytes      int64
 	SourceTime time.Time
 	Hash       string
+
+	// Where files grow: how many of its bytes were read, their hash and lines, and
+	// the batch that holds its beginning, 0 if none is of use.
+	Position     int64
+	PositionHash string
+	Lines        int64
+	Head         int64
 }
 
 // FilesSeen returns what this host last saw under each name of a feed.
 func (db *DB) FilesSeen(ctx context.Context, feed, host string) (map[string]FileSeen, error) {
-	rows, err := db.pool.Query(ctx, `select name, bytes, source_time, content_hash
-		from thaw.feed_files join thaw.feeds using (feed_id) where feed = $1 and host = $2`, feed, host)
+	rows, err := db.pool.Query(ctx, `select w.name, w.bytes, w.source_time, w.content_hash, w.position, w.position_hash, w.position_lines,
+			case when h.rows_read > 0 then h.batch_id else 0 end::bigint
+		from thaw.feed_files w join thaw.feeds f using (feed_id) left join thaw.batches h on h.batch_id = w.head_batch
+		where f.feed = $1 and w.host = $2`, feed, host)
 	if err != nil {
 		return nil, fmt.Errorf("read files seen of %s: %w", feed, err)
 	}
@@ -152,7 +210,7 @@ func (db *DB) FilesSeen(ctx context.Context, feed, host string) (map[string]File
 		name string
 		f    FileSeen
 	)
-	_, err = pgx.ForEachRow(rows, []any{&name, &f.Bytes, &f.SourceTime, &f.Hash}, func() error {
+	_, err = pgx.ForEachRow(rows, []any{&name, &f.Bytes, &f.SourceTime, &f.Hash, &f.Position, &f.PositionHash, &f.Lines, &f.Head}, func() error {
 		out[name] = f
 		return nil
 	})
@@ -168,15 +226,16 @@ func (db *DB) OpenBatches(ctx context.Context, host string) ([]Batch, error) {
 }
 
 func (db *DB) batches(ctx context.Context, where string, args ...any) ([]Batch, error) {
-	rows, err := db.pool.Query(ctx, `select b.batch_id::bigint, f.feed, b.name, b.content_hash, b.archive_path, l.layout
+	rows, err := db.pool.Query(ctx, `select b.batch_id::bigint, f.feed, b.name, b.content_hash, b.archive_path, l.layout, coalesce(h.archive_path, ''), b.lines_before
 		from thaw.batches b join thaw.feeds f using (feed_id) join thaw.layouts l using (layout_hash)
+			left join thaw.batches h on h.batch_id = b.head_batch
 		where `+where+` order by b.batch_id`, args...)
 	if err != nil {
 		return nil, fmt.Errorf("read batches: %w", err)
 	}
 	out, err := pgx.CollectRows(rows, func(r pgx.CollectableRow) (Batch, error) {
 		b := Batch{Layout: &pipeline.Layout{}}
-		return b, r.Scan(&b.ID, &b.Feed, &b.Name, &b.Hash, &b.ArchivePath, b.Layout)
+		return b, r.Scan(&b.ID, &b.Feed, &b.Name, &b.Hash, &b.ArchivePath, b.Layout, &b.HeadPath, &b.LinesBefore)
 	})
 	if err != nil {
 		return nil, fmt.Errorf("read batches: %w", err)

@@ -66,8 +66,9 @@ func (db *DB) Reread(ctx context.Context, feed string, only []int64, layout *pip
 			}
 			r := Rereading{Of: c.ID, Name: c.Name}
 			err := tx.QueryRow(ctx, `insert into thaw.batches (feed_id, name, content_hash, bytes, batch_order, layout_hash,
-					source_time, arrived_at, host, archive_path, state, rereads, replaces_span)
-				select feed_id, name, content_hash, bytes, `+lowOrder+`, $2, source_time, arrived_at, host, archive_path, 'opened', batch_id, $3
+					source_time, arrived_at, host, archive_path, state, rereads, replaces_span, from_byte, lines_before, head_batch)
+				select feed_id, name, content_hash, bytes, `+lowOrder+`, $2, source_time, arrived_at, host, archive_path, 'opened', batch_id, $3,
+					from_byte, lines_before, head_batch
 				from thaw.batches b where batch_id = $1 returning batch_id`, c.ID, hash, replacesSpan).Scan(&r.Batch)
 			if err != nil {
 				return fmt.Errorf("open batch %d again: %w", c.ID, err)
