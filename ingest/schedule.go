@@ -20,7 +20,7 @@ func (s *Service) schedule(intake context.Context) (stop func(context.Context), 
 	log := cronLog{s.Log}
 	c := cron.New(cron.WithLocation(time.UTC), cron.WithLogger(log),
 		cron.WithChain(cron.Recover(log), cron.SkipIfStillRunning(log)))
-	for i := range s.Feeds {
+	for i := range s.sources() {
 		f := &s.Feeds[i]
 		if _, err := c.AddFunc(f.Schedule, func() { s.look(intake, f) }); err != nil {
 			return nil, fmt.Errorf("schedule feed %s: %w", f.Name, err)

@@ -28,6 +28,9 @@ type Config struct {
 	// is published again, RepublishAllowed how often it may be published at all.
 	RepublishAfter   time.Duration
 	RepublishAllowed int
+	// DeliveriesOnly leaves the feeds' own sources alone: only what is handed over
+	// is read, and what was begun is finished.
+	DeliveriesOnly bool
 }
 
 // Service is the ingest worker.
@@ -63,7 +66,7 @@ func New(c Config) *Service {
 func (s *Service) Run(intake, work context.Context) error {
 	s.reopenHeld(intake)
 	s.finish(intake)
-	for i := range s.Feeds {
+	for i := range s.sources() {
 		s.look(intake, &s.Feeds[i])
 	}
 	stop, err := s.schedule(intake)
@@ -83,6 +86,14 @@ func (s *Service) Run(intake, work context.Context) error {
 	}
 }
 
+// sources returns the feeds that are looked at.
+func (s *Service) sources() []pipeline.Feed {
+	if s.DeliveriesOnly {
+		return nil
+	}
+	return s.Feeds
+}
+
 // Settled says whether every feed was looked at and nothing in it is still
 // being written. It looks again at those where something was.
 func (s *Service) Settled(ctx context.Context) (bool, error) {
@@ -90,7 +101,7 @@ func (s *Service) Settled(ctx context.Context) (bool, error) {
 	var again []*pipeline.Feed
 	missing := 0
 	var failed []error
-	for i := range s.Feeds {
+	for i := range s.sources() {
 		l, ok := s.looks[s.Feeds[i].Name]
 		switch {
 		case !ok:

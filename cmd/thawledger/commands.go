@@ -16,7 +16,7 @@ const usage = `thawledger keeps account of how much thaw each surface on frozen 
   thawledger schema [apply]          show the database's schema, or bring it up to date
   thawledger standing [SITE]         how surfaces stand against their design values
   thawledger ledger                  what arrived and what became of it
-  thawledger feed reread|take        read batches again by a corrected layout; use one that waits
+  thawledger feed read|reread|take   take a file by hand; read batches again; use one that waits
   thawledger version
 
 Each takes --help. Screening figures: local codes and a licensed engineer decide.

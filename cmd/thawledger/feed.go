@@ -3,14 +3,16 @@ package main
 import (
 	"context"
 	"fmt"
-	"slices"
 	"strconv"
+	"strings"
 
 	"thawledger/pipeline"
+	"thawledger/pipeline/settings"
 )
 
 const feedSynopsis = `feed reread FEED [BATCH...] [--settings FILE]: read archived batches of a feed again by its present layout
-thawledger feed take BATCH [--settings FILE]: use a batch that waits because its bytes came before`
+thawledger feed take BATCH [--settings FILE]: use a batch that waits because its bytes came before
+thawledger feed read FEED FILE... [--settings FILE]: take files as if the feed had brought them; - is standard input`
 
 // feed is the command `feed`.
 func (p program) feed(ctx context.Context, args []string) error {
@@ -20,11 +22,24 @@ func (p program) feed(ctx context.Context, args []string) error {
 			return p.feedReread(ctx, args[1:])
 		case "take":
 			return p.feedTake(ctx, args[1:])
+		case "read":
+			return p.feedRead(ctx, args[1:])
 		}
 	}
 	f := p.flags("feed", feedSynopsis)
 	f.Usage()
 	return errUsage
+}
+
+func feedNamed(set *settings.Settings, name string) (*pipeline.Feed, error) {
+	var names []string
+	for i := range set.Feeds {
+		if set.Feeds[i].Name == name {
+			return &set.Feeds[i], nil
+		}
+		names = append(names, set.Feeds[i].Name)
+	}
+	return nil, fmt.Errorf("there is no feed %q in the settings; feeds are %s", name, strings.Join(names, ", "))
 }
 
 // batchNumbers reads batches as the ledger numbers them.
@@ -61,16 +76,16 @@ func (p program) feedReread(ctx context.Context, args []string) error {
 	if err != nil {
 		return err
 	}
-	i := slices.IndexFunc(set.Feeds, func(f pipeline.Feed) bool { return f.Name == rest[0] })
-	if i < 0 {
-		return fmt.Errorf("there is no feed %q in %s", rest[0], *file)
+	of, err := feedNamed(set, rest[0])
+	if err != nil {
+		return err
 	}
 	db, done, err := p.reading(ctx, set)
 	if err != nil {
 		return err
 	}
 	defer done()
-	again, err := db.Reread(ctx, set.Feeds[i].Name, only, &set.Feeds[i].Layout, set.Feeds[i].ReplacesSpan)
+	again, err := db.Reread(ctx, of.Name, only, &of.Layout, of.ReplacesSpan)
 	if err != nil {
 		return err
 	}

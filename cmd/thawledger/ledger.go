@@ -45,18 +45,13 @@ func (p program) showLedger(ctx context.Context, db *store.DB) error {
 	if err != nil {
 		return err
 	}
-	w := tabwriter.NewWriter(p.out, 0, 0, 2, ' ', tabwriter.AlignRight)
-	fmt.Fprintln(w, "FEED\tSTATE\tFILES\tROWS\tREAD\tWITHOUT VALUE\tSET ASIDE\tCELLS\tREADINGS\tNO VALUE\tASIDE\tREPEATED\t")
+	p.showLedgerLines(lines)
 	var wrong []string
 	for i := range lines {
-		l := &lines[i]
-		fmt.Fprintf(w, "%s\t%s\t%d\t%d\t%d\t%d\t%d\t%d\t%d\t%d\t%d\t%d\t\n", l.Feed, l.State, l.Batches,
-			l.Rows, l.RowsRead, l.RowsWithoutValue, l.RowsSetAside, l.Cells, l.Readings, l.CellsMissing, l.CellsSetAside, l.CellsRepeated)
-		if !l.AddsUp() {
-			wrong = append(wrong, l.Feed)
+		if !lines[i].AddsUp() {
+			wrong = append(wrong, lines[i].Feed)
 		}
 	}
-	w.Flush()
 	if len(wrong) > 0 {
 		return fmt.Errorf("the ledger does not add up for %v", wrong)
 	}
@@ -76,6 +71,17 @@ func (p program) showLedger(ctx context.Context, db *store.DB) error {
 		fmt.Fprintf(p.out, "%s: feed %s, %s%s\n", strings.ReplaceAll(f.State, "_", " "), f.Feed, f.Name, reason)
 	}
 	return nil
+}
+
+func (p program) showLedgerLines(lines []store.LedgerLine) {
+	w := tabwriter.NewWriter(p.out, 0, 0, 2, ' ', tabwriter.AlignRight)
+	fmt.Fprintln(w, "FEED\tSTATE\tFILES\tROWS\tREAD\tWITHOUT VALUE\tSET ASIDE\tCELLS\tREADINGS\tNO VALUE\tASIDE\tREPEATED\t")
+	for i := range lines {
+		l := &lines[i]
+		fmt.Fprintf(w, "%s\t%s\t%d\t%d\t%d\t%d\t%d\t%d\t%d\t%d\t%d\t%d\t\n", l.Feed, strings.ReplaceAll(l.State, "_", " "), l.Batches,
+			l.Rows, l.RowsRead, l.RowsWithoutValue, l.RowsSetAside, l.Cells, l.Readings, l.CellsMissing, l.CellsSetAside, l.CellsRepeated)
+	}
+	w.Flush()
 }
 
 // showSetAside prints what was set aside by feed and reason, with an example of each.

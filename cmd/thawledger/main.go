@@ -17,6 +17,7 @@ import (
 // program is what a command may use of the world, so that tests can give their own.
 type program struct {
 	out, err io.Writer
+	stdin    io.Reader       // os.Stdin if nil
 	hurry    <-chan struct{} // a second signal
 }
 

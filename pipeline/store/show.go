@@ -114,6 +114,22 @@ func (l *LedgerLine) AddsUp() bool {
 
 // LedgerSums returns the ledger summed by feed and state.
 func (db *DB) LedgerSums(ctx context.Context) ([]LedgerLine, error) {
+	return db.ledgerSums(ctx, `true`)
+}
+
+// LedgerOf returns the line of one batch.
+func (db *DB) LedgerOf(ctx context.Context, batch int64) (LedgerLine, error) {
+	lines, err := db.ledgerSums(ctx, `batch_id = $1`, batch)
+	if err == nil && len(lines) == 0 {
+		err = fmt.Errorf("there is no batch %d", batch)
+	}
+	if err != nil {
+		return LedgerLine{}, err
+	}
+	return lines[0], nil
+}
+
+func (db *DB) ledgerSums(ctx context.Context, where string, args ...any) ([]LedgerLine, error) {
 	rows, err := db.pool.Query(ctx, `select feed, count(*) as batches, state, min(reason) as reason,
 			coalesce(sum(rows), 0)::bigint as rows, coalesce(sum(rows_read), 0)::bigint as rows_read,
 			coalesce(sum(rows_without_value), 0)::bigint as rows_without_value,
@@ -122,7 +138,7 @@ func (db *DB) LedgerSums(ctx context.Context) ([]LedgerLine, error) {
 			coalesce(sum(cells_missing), 0)::bigint as cells_missing, coalesce(sum(cells_set_aside), 0)::bigint as cells_set_aside,
 			coalesce(sum(cells_repeated), 0)::bigint as cells_repeated,
 			coalesce(sum(parts - parts_committed), 0)::bigint as parts_open, coalesce(sum(parts_stuck), 0)::bigint as parts_stuck
-		from thaw.ledger group by feed, state order by feed, state`)
+		from thaw.ledger where `+where+` group by feed, state order by feed, state`, args...)
 	if err != nil {
 		return nil, fmt.Errorf("read ledger: %w", err)
 	}
@@ -169,6 +185,25 @@ func (db *DB) AsideSums(ctx context.Context) ([]AsideSum, error) {
 		return nil, fmt.Errorf("read set-aside rows: %w", err)
 	}
 	return collect[AsideSum](rows, "set-aside rows")
+}
+
+// Aside is a row or cell that was set aside.
+type Aside struct {
+	Line       int64
+	ColumnNo   int
+	ColumnName string
+	Code       string
+	Reason     string
+}
+
+// AsideOf returns the first rows and cells of a batch that were set aside.
+func (db *DB) AsideOf(ctx context.Context, batch int64, limit int) ([]Aside, error) {
+	rows, err := db.pool.Query(ctx, `select line, column_no, column_name, code, reason from thaw.set_aside
+		where batch_id = $1 order by line, column_no limit $2`, batch, limit)
+	if err != nil {
+		return nil, fmt.Errorf("read set-aside rows: %w", err)
+	}
+	return collect[Aside](rows, "set-aside rows")
 }
 
 // Fingerprint returns one hash over all that the program holds; equal for equal
