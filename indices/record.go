@@ -19,7 +19,11 @@ func bringIntoLine(ctx context.Context, t *store.Take, st *pipeline.Station, day
 	if err != nil {
 		return err
 	}
-	values, err := makeDays(ctx, t, st, beyond(stored, days))
+	edits, err := editsOf(ctx, t)
+	if err != nil {
+		return err
+	}
+	values, err := makeDays(ctx, t, st, edits, beyond(stored, reached(edits, days)))
 	if err != nil {
 		return err
 	}
@@ -57,58 +61,45 @@ func makeAnew(ctx context.Context, t *store.Take, st *pipeline.Station) error {
 	if err != nil {
 		return err
 	}
-	var values []daily.Value
+	edits, err := editsOf(ctx, t)
+	if err != nil {
+		return err
+	}
+	var days []pipeline.Day
 	if ok {
-		var days []pipeline.Day
 		for d := st.DayAt(first); d <= st.DayAt(last); d++ {
 			days = append(days, d)
 		}
-		if values, err = makeDays(ctx, t, st, days); err != nil {
+	}
+	for i := range edits {
+		if edits[i].Kind == pipeline.EditReplace {
+			days = append(days, st.DayAt(time.Unix(edits[i].FromS, 0)))
+		}
+	}
+	var values []daily.Value
+	if len(days) > 0 {
+		if values, err = makeDays(ctx, t, st, edits, reached(edits, days)); err != nil {
 			return err
 		}
 	}
 	return write(ctx, t, st, stored, values, true)
 }
 
-// runGap is how many days without a change are read along rather than asked for
-// in two questions.
-const runGap = 40
-
-// makeDays makes the daily values of the given days from the readings.
-func makeDays(ctx context.Context, t *store.Take, st *pipeline.Station, days []pipeline.Day) ([]daily.Value, error) {
-	values := make([]daily.Value, 0, len(days))
-	var in []daily.Input
-	for i := 0; i < len(days); {
-		j := i + 1
-		for j < len(days) && days[j]-days[j-1] <= runGap {
-			j++
+// reached adds to days those that edits may have moved their readings to, and
+// sorts them.
+func reached(edits []daily.Edit, days []pipeline.Day) []pipeline.Day {
+	reach := pipeline.Day((daily.Reach(edits) + daySeconds - 1) / daySeconds)
+	out := slices.Clone(days)
+	for _, d := range days {
+		for n := pipeline.Day(1); n <= reach; n++ {
+			out = append(out, d-n, d+n)
 		}
-		run := days[i:j]
-		next := 0 // the day of run that readings are being gathered for
-		finish := func(upTo pipeline.Day) {
-			for next < len(run) && run[next] < upTo {
-				values = append(values, daily.Make(st, run[next], in))
-				in = in[:0]
-				next++
-			}
-		}
-		err := t.EachReading(ctx, st.DayStart(run[0]), st.DayStart(run[len(run)-1]+1),
-			func(s *store.SeriesInfo, startS int64, valueC float64, q pipeline.Quality) {
-				day := st.DayAt(time.Unix(startS, 0))
-				finish(day)
-				if next < len(run) && run[next] == day {
-					in = append(in, daily.Input{Feed: s.Feed, Rank: s.Rank, Sensor: s.Sensor, Variable: s.Variable, SpanS: s.SpanS,
-						StartS: startS, ValueC: valueC, Quality: q})
-				}
-			})
-		if err != nil {
-			return nil, err
-		}
-		finish(run[len(run)-1] + 1)
-		i = j
 	}
-	return values, nil
+	slices.Sort(out)
+	return slices.Compact(out)
 }
+
+const daySeconds = 86400
 
 // merge puts newly made values in the place of the stored ones. Stored days that
 // hold nothing of their own (filled, or never seen) are left out: they follow
