@@ -53,7 +53,7 @@ func (s *Service) finishOpen(ctx context.Context) error {
 		}
 		failed = append(failed, err)
 		if s.failed[b.ID]++; s.failed[b.ID] >= readFailures && !store.Temporary(err) {
-			counts, _, _ := s.firstPass(ctx, b)
+			counts, _, _, _ := s.firstPass(ctx, b)
 			failed = append(failed, s.DB.HoldBatch(ctx, b.ID, "could not be read: "+err.Error(), counts))
 		}
 	}

@@ -23,7 +23,10 @@ const flushParts = 200
 // readable as a whole is held back, which is no error.
 func (s *Service) read(ctx context.Context, b *store.Batch) error {
 	log := s.Log.With(zap.String("feed", b.Feed), zap.String("file", b.Name), zap.Int64("batch", b.ID))
-	counts, lines, err := s.firstPass(ctx, b)
+	counts, lines, doubt, err := s.firstPass(ctx, b)
+	if err == nil && doubt != "" {
+		err = &csvfeed.HoldError{Text: doubt + fmt.Sprintf("; if it is right as it is: thawledger feed take %d", b.ID)}
+	}
 	if hold, ok := errors.AsType[*csvfeed.HoldError](err); ok {
 		log.Error("batch held back, nothing of it is used", zap.Error(hold))
 		return s.DB.HoldBatch(ctx, b.ID, hold.Error(), counts)
@@ -39,11 +42,13 @@ func (s *Service) read(ctx context.Context, b *store.Batch) error {
 	return s.publish(ctx, b, nil)
 }
 
-// firstPass counts, keeps what is set aside and lists the parts.
-func (s *Service) firstPass(ctx context.Context, b *store.Batch) (pipeline.Counts, []store.PartLine, error) {
+// firstPass counts, keeps what is set aside, lists the parts, and says what is
+// doubtful about the batch as a whole.
+func (s *Service) firstPass(ctx context.Context, b *store.Batch) (_ pipeline.Counts, _ []store.PartLine, doubt string, _ error) {
 	if err := s.DB.ClearBatch(ctx, b.ID); err != nil {
-		return pipeline.Counts{}, nil, err
+		return pipeline.Counts{}, nil, "", err
 	}
+	doubts := s.newDoubts(b)
 	var lines []store.PartLine
 	var aside []pipeline.SetAside
 	flush := func() error {
@@ -60,7 +65,7 @@ func (s *Service) firstPass(ctx context.Context, b *store.Batch) (pipeline.Count
 			line.FirstS, line.LastS = min(line.FirstS, r.StartS), max(line.LastS, r.StartS)
 		}
 		lines = append(lines, line)
-		return nil
+		return doubts.add(ctx, p)
 	}, func(row pipeline.SetAside) error {
 		aside = append(aside, row)
 		if len(aside) < setAsideChunk {
@@ -71,7 +76,7 @@ func (s *Service) firstPass(ctx context.Context, b *store.Batch) (pipeline.Count
 	if flushed := flush(); err == nil {
 		err = flushed
 	}
-	return counts, lines, err
+	return counts, lines, doubts.verdict(), err
 }
 
 // publish sends the parts of a read batch: those in attempts, as the attempt

@@ -14,12 +14,13 @@ import (
 //
 // The library starts with no protection at all: a panic is recovered and logged,
 // and a look that is still under way is not begun again, only because it is
-// said here. It forgets everything with the process; Run looks at every feed
+// said here. A panic is to be recovered inside, or the look would count as under
+// way for ever. It forgets everything with the process; Run looks at every feed
 // when it starts.
 func (s *Service) schedule(intake context.Context) (stop func(context.Context), err error) {
 	log := cronLog{s.Log}
 	c := cron.New(cron.WithLocation(time.UTC), cron.WithLogger(log),
-		cron.WithChain(cron.Recover(log), cron.SkipIfStillRunning(log)))
+		cron.WithChain(cron.SkipIfStillRunning(log), cron.Recover(log)))
 	for i := range s.sources() {
 		f := &s.Feeds[i]
 		if _, err := c.AddFunc(f.Schedule, func() { s.look(intake, f) }); err != nil {

@@ -42,6 +42,8 @@ type Service struct {
 	folders map[string]*feed.Folder
 	failed  map[int64]int // how often reading an open batch failed
 	looks   map[string]look
+	// climates are those that readings were last held against, by station
+	climates map[string]knownClimate
 }
 
 // look is how the last look at a feed went.
@@ -52,7 +54,7 @@ type look struct {
 
 // New returns an ingest worker.
 func New(c Config) *Service {
-	s := &Service{Config: c, folders: map[string]*feed.Folder{}, failed: map[int64]int{}, looks: map[string]look{}}
+	s := &Service{Config: c, folders: map[string]*feed.Folder{}, failed: map[int64]int{}, looks: map[string]look{}, climates: map[string]knownClimate{}}
 	for i := range s.Feeds {
 		f := &s.Feeds[i]
 		s.folders[f.Name] = feed.NewFolder(f.Folder, f.Pattern, f.Settle)

@@ -11,7 +11,7 @@ import (
 )
 
 const feedSynopsis = `feed reread FEED [BATCH...] [--settings FILE]: read archived batches of a feed again by its present layout
-thawledger feed take BATCH [--settings FILE]: use a batch that waits because its bytes came before
+thawledger feed take BATCH [--settings FILE]: use a batch that waits, or is held back as implausible
 thawledger feed read FEED FILE... [--settings FILE]: take files as if the feed had brought them; - is standard input`
 
 // feed is the command `feed`.
@@ -125,7 +125,7 @@ func (p program) feedTake(ctx context.Context, args []string) error {
 		return err
 	}
 	defer done()
-	if err := db.TakeWaiting(ctx, ids[0]); err != nil {
+	if err := db.TakeByHand(ctx, ids[0]); err != nil {
 		return err
 	}
 	fmt.Fprintf(p.out, "batch %d will be read\n", ids[0])

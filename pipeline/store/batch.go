@@ -56,6 +56,7 @@ type Batch struct {
 	Layout      *pipeline.Layout
 	HeadPath    string // archive of the file's beginning, where this batch is not that
 	LinesBefore int64  // of the file
+	TakenByHand bool   // a person has asked for it
 }
 
 // Seen says what the ledger made of an arrival.
@@ -226,7 +227,7 @@ func (db *DB) OpenBatches(ctx context.Context, host string) ([]Batch, error) {
 }
 
 func (db *DB) batches(ctx context.Context, where string, args ...any) ([]Batch, error) {
-	rows, err := db.pool.Query(ctx, `select b.batch_id::bigint, f.feed, b.name, b.content_hash, b.archive_path, l.layout, coalesce(h.archive_path, ''), b.lines_before
+	rows, err := db.pool.Query(ctx, `select b.batch_id::bigint, f.feed, b.name, b.content_hash, b.archive_path, l.layout, coalesce(h.archive_path, ''), b.lines_before, b.taken_by_hand
 		from thaw.batches b join thaw.feeds f using (feed_id) join thaw.layouts l using (layout_hash)
 			left join thaw.batches h on h.batch_id = b.head_batch
 		where `+where+` order by b.batch_id`, args...)
@@ -235,7 +236,7 @@ func (db *DB) batches(ctx context.Context, where string, args ...any) ([]Batch, 
 	}
 	out, err := pgx.CollectRows(rows, func(r pgx.CollectableRow) (Batch, error) {
 		b := Batch{Layout: &pipeline.Layout{}}
-		return b, r.Scan(&b.ID, &b.Feed, &b.Name, &b.Hash, &b.ArchivePath, b.Layout, &b.HeadPath, &b.LinesBefore)
+		return b, r.Scan(&b.ID, &b.Feed, &b.Name, &b.Hash, &b.ArchivePath, b.Layout, &b.HeadPath, &b.LinesBefore, &b.TakenByHand)
 	})
 	if err != nil {
 		return nil, fmt.Errorf("read batches: %w", err)

@@ -174,14 +174,15 @@ func takeOver(ctx context.Context, tx pgx.Tx, id int64) error {
 	return nil
 }
 
-// TakeWaiting opens a batch that waits because its bytes came before. It gets
-// the highest order of its feed: whoever asks for it wants it to count.
-func (db *DB) TakeWaiting(ctx context.Context, id int64) error {
+// TakeByHand opens a batch that waits because its bytes came before, or that was
+// held back. The first gets the highest order of its feed: whoever asks for it
+// wants it to count.
+func (db *DB) TakeByHand(ctx context.Context, id int64) error {
 	return db.within(ctx, func(tx pgx.Tx) error {
 		var feed, state string
 		err := tx.QueryRow(ctx, `select f.feed, b.state from thaw.batches b join thaw.feeds f using (feed_id) where batch_id = $1`, id).Scan(&feed, &state)
-		if errors.Is(err, pgx.ErrNoRows) || err == nil && state != "waiting" {
-			return fmt.Errorf("there is no batch %d that waits to be asked for", id)
+		if errors.Is(err, pgx.ErrNoRows) || err == nil && state != "waiting" && state != "held_back" {
+			return fmt.Errorf("there is no batch %d that waits or is held back", id)
 		}
 		if err != nil {
 			return fmt.Errorf("look up batch %d: %w", id, err)
@@ -189,9 +190,10 @@ func (db *DB) TakeWaiting(ctx context.Context, id int64) error {
 		if err := lock(ctx, tx, lockFeed, feed); err != nil {
 			return err
 		}
-		_, err = tx.Exec(ctx, `update thaw.batches b set state = 'opened', reason = null,
-				batch_order = (select max(o.batch_order) + 1 from thaw.batches o where o.feed_id = b.feed_id)
-			where batch_id = $1 and state = 'waiting'`, id)
+		_, err = tx.Exec(ctx, `update thaw.batches b set state = 'opened', reason = null, taken_by_hand = true,
+				batch_order = case state when 'waiting' then (select max(o.batch_order) + 1 from thaw.batches o where o.feed_id = b.feed_id)
+					else batch_order end
+			where batch_id = $1 and state in ('waiting', 'held_back')`, id)
 		if err != nil {
 			return fmt.Errorf("open batch %d: %w", id, err)
 		}

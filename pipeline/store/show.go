@@ -206,6 +206,24 @@ func (db *DB) AsideOf(ctx context.Context, batch int64, limit int) ([]Aside, err
 	return collect[Aside](rows, "set-aside rows")
 }
 
+// DateSum sums a station's observed daily means of one date of the year.
+type DateSum struct {
+	YearDay int
+	N       int
+	Sum     float64 // degC
+	Squares float64
+}
+
+// Climate returns the sums of a station's observed daily means by date.
+func (db *DB) Climate(ctx context.Context, station string) ([]DateSum, error) {
+	rows, err := db.pool.Query(ctx, `select extract(doy from day)::int as year_day, count(*)::int as n, sum(mean_c) as sum, sum(mean_c * mean_c) as squares
+		from thaw.daily_values where station = $1 and origin = 1 group by 1`, station)
+	if err != nil {
+		return nil, fmt.Errorf("read climate of %s: %w", station, err)
+	}
+	return collect[DateSum](rows, "climate")
+}
+
 // Fingerprint returns one hash over all that the program holds; equal for equal
 // contents.
 func (db *DB) Fingerprint(ctx context.Context) (string, error) {
