@@ -18,6 +18,7 @@ const usage = `thawledger keeps account of how much thaw each surface on frozen 
   thawledger ledger                  what arrived and what became of it
   thawledger feed read|reread|take   take a file by hand; read batches again; use one that waits
   thawledger edit ...                correct readings by hand, with author and reason; undo; list
+  thawledger approve ...             answer for a record through a day; decide on late corrections
   thawledger version
 
 Each takes --help. Screening figures: local codes and a licensed engineer decide.
@@ -46,6 +47,8 @@ func (p program) run(ctx context.Context, args []string) error {
 		return p.feed(ctx, rest)
 	case "edit":
 		return p.edit(ctx, rest)
+	case "approve":
+		return p.approve(ctx, rest)
 	case "version", "--version":
 		fmt.Fprintln(p.out, version())
 		return nil

@@ -63,9 +63,13 @@ func (t *Take) WriteReadings(ctx context.Context, st *pipeline.Station, parts []
 	if err != nil {
 		return nil, nil, err
 	}
-	v.decide(rows, there, fates)
+	before, err := t.approved(ctx)
+	if err != nil {
+		return nil, nil, err
+	}
+	v.decide(rows, there, fates, &guard{before, states})
 	t.remember(ids, v, len(there) == 0)
-	for _, step := range []func(context.Context, verdict) error{t.copyNew, t.updateChanged, t.keepReplaced} {
+	for _, step := range []func(context.Context, verdict) error{t.copyNew, t.updateChanged, t.keepReplaced, t.keepWaiting} {
 		if err := step(ctx, v); err != nil {
 			return nil, nil, err
 		}
@@ -220,6 +224,7 @@ func (t *Take) existing(ctx context.Context, rows []row) (map[key]row, error) {
 type verdict struct {
 	fresh, changed, moved []row // moved: the same value by a later batch or row
 	replaced              []loser
+	waiting               []row // would change an approved day
 }
 
 type loser struct{ lost, winner row }
@@ -249,7 +254,8 @@ func (v *verdict) passOver(rows []row, spans []spanInForce, states []PartState, 
 }
 
 // decide settles who stays for each key and counts what became of each part.
-func (v *verdict) decide(rows []row, there map[key]row, fates []Fate) {
+// What would change an approved day waits, and counts as unchanged.
+func (v *verdict) decide(rows []row, there map[key]row, fates []Fate, g *guard) {
 	for i := 0; i < len(rows); {
 		j := i + 1
 		for j < len(rows) && rows[j].series == rows[i].series && rows[j].startS == rows[i].startS {
@@ -273,12 +279,21 @@ func (v *verdict) decide(rows []row, there map[key]row, fates []Fate) {
 			}
 			v.lose(r, winner)
 		}
+		differs := !known || old.valueC != winner.valueC || old.quality != winner.quality
+		if winner.part >= 0 && differs && g.keeps(&winner) {
+			if !g.states[winner.part].Rejected {
+				v.waiting = append(v.waiting, winner)
+			}
+			fates[winner.part].Unchanged++
+			i = j
+			continue
+		}
 		switch {
 		case winner.part < 0: // what was there stays
 		case !known:
 			fates[winner.part].New++
 			v.fresh = append(v.fresh, winner)
-		case old.valueC == winner.valueC && old.quality == winner.quality:
+		case !differs:
 			fates[winner.part].Unchanged++
 			v.moved = append(v.moved, winner)
 		default:

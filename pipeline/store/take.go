@@ -91,6 +91,8 @@ type PartState struct {
 	Known     bool // the batch and part are in the ledger
 	Committed bool // or read again since, so that nothing of it counts
 	Stuck     bool
+	Accepted  bool  // its batch may change approved days
+	Rejected  bool  // its batch may not, as a person has decided
 	Order     int64 // of its batch
 	ArrivedAt time.Time
 	FeedID    int16
@@ -102,7 +104,8 @@ func (t *Take) PartStates(ctx context.Context, parts []*pipeline.Part) ([]PartSt
 	for i, p := range parts {
 		batches[i], numbers[i] = p.Batch, p.Number
 	}
-	rows, err := t.tx.Query(ctx, `select u.n, p.committed_at is not null or b.state = 'reread', p.stuck_at is not null, b.batch_order, b.feed_id, b.arrived_at
+	rows, err := t.tx.Query(ctx, `select u.n, p.committed_at is not null or b.state = 'reread', p.stuck_at is not null,
+			coalesce(b.decision = 'accepted', false), coalesce(b.decision = 'rejected', false), b.batch_order, b.feed_id, b.arrived_at
 		from unnest($1::bigint[], $2::int[]) with ordinality u (batch_id, part, n)
 		join thaw.batch_parts p on p.batch_id = u.batch_id and p.part = u.part
 		join thaw.batches b on b.batch_id = p.batch_id
@@ -113,7 +116,7 @@ func (t *Take) PartStates(ctx context.Context, parts []*pipeline.Part) ([]PartSt
 	out := make([]PartState, len(parts))
 	var n int64
 	var s PartState
-	_, err = pgx.ForEachRow(rows, []any{&n, &s.Committed, &s.Stuck, &s.Order, &s.FeedID, &s.ArrivedAt}, func() error {
+	_, err = pgx.ForEachRow(rows, []any{&n, &s.Committed, &s.Stuck, &s.Accepted, &s.Rejected, &s.Order, &s.FeedID, &s.ArrivedAt}, func() error {
 		s.Known = true
 		out[n-1] = s
 		return nil

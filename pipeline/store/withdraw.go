@@ -79,14 +79,22 @@ func (t *Take) withdrawSpan(ctx context.Context, st *pipeline.Station, batch int
 	var feed int16
 	var order int64
 	var from, to *time.Time
-	err := t.tx.QueryRow(ctx, `select b.feed_id, b.batch_order, min(p.first_utc), max(p.last_utc)
+	var accepted bool
+	err := t.tx.QueryRow(ctx, `select b.feed_id, b.batch_order, min(p.first_utc), max(p.last_utc), coalesce(b.decision = 'accepted', false)
 		from thaw.batches b left join thaw.batch_parts p on p.batch_id = b.batch_id and p.station = $2
-		where b.batch_id = $1 and b.replaces_span group by b.feed_id, b.batch_order`, batch, t.station).Scan(&feed, &order, &from, &to)
+		where b.batch_id = $1 and b.replaces_span group by b.batch_id`, batch, t.station).Scan(&feed, &order, &from, &to, &accepted)
 	if err == pgx.ErrNoRows || err == nil && from == nil {
 		return nil, nil
 	}
 	if err != nil {
 		return nil, err
+	}
+	before, err := t.approved(ctx)
+	if err != nil {
+		return nil, err
+	}
+	if !accepted && from.Unix() < before {
+		from = new(time.Unix(before, 0)) // approved days are left as they are
 	}
 	return t.withdrawWhere(ctx, st, batch, *from, *to, `s.feed_id = $5 and
 		(select b.batch_order from thaw.batches b where b.batch_id = v.batch_id) < $6`, feed, order)
