@@ -48,8 +48,8 @@ func makeDays(ctx context.Context, t *store.Take, st *pipeline.Station, edits []
 	return values, nil
 }
 
-func editsOf(ctx context.Context, t *store.Take) ([]daily.Edit, error) {
-	kept, err := t.Edits(ctx)
+func editsOf(ctx context.Context, t *store.Take, st *pipeline.Station) ([]daily.Edit, error) {
+	kept, err := t.Edits(ctx, st)
 	if err != nil {
 		return nil, err
 	}

@@ -19,7 +19,7 @@ func bringIntoLine(ctx context.Context, t *store.Take, st *pipeline.Station, day
 	if err != nil {
 		return err
 	}
-	edits, err := editsOf(ctx, t)
+	edits, err := editsOf(ctx, t, st)
 	if err != nil {
 		return err
 	}
@@ -57,11 +57,18 @@ func makeAnew(ctx context.Context, t *store.Take, st *pipeline.Station) error {
 	if err != nil {
 		return err
 	}
+	if len(st.Joined) > 0 {
+		values, err := joined(ctx, t, st)
+		if err != nil {
+			return err
+		}
+		return write(ctx, t, st, stored, values, true)
+	}
 	first, last, ok, err := t.Span(ctx)
 	if err != nil {
 		return err
 	}
-	edits, err := editsOf(ctx, t)
+	edits, err := editsOf(ctx, t, st)
 	if err != nil {
 		return err
 	}

@@ -31,6 +31,44 @@ type Station struct {
 	FillDays   int      // longest gap, in days, that a straight line may bridge
 	ThawYear   MonthDay // first day of the window that a thaw season is sought in
 	FreezeYear MonthDay // first day of the window that a freeze season is sought in
+	Facts      []Fact
+	// Joined is not empty for a record that has no readings of its own but takes
+	// the daily values of other stations, one after another.
+	Joined []Member
+}
+
+// Fact is something that happened to a station.
+type Fact struct {
+	What     FactKind
+	From, To Day // both included
+	Note     string
+}
+
+// FactKind says what happened.
+type FactKind string
+
+// What may happen to a station. The first five are possible breaks of its record.
+const (
+	NewSensor   FactKind = "sensor"
+	NewShield   FactKind = "shield"
+	NewHeight   FactKind = "height"
+	Moved       FactKind = "moved"
+	Calibrated  FactKind = "calibrated"
+	Visit       FactKind = "visit"
+	Maintenance FactKind = "maintenance" // readings are not used
+	Outage      FactKind = "outage"      // planned
+)
+
+// FactKinds lists the kinds in the order in which messages name them.
+var FactKinds = []FactKind{NewSensor, NewShield, NewHeight, Moved, Calibrated, Visit, Maintenance, Outage}
+
+// Member is a station that a joined record takes daily values from.
+type Member struct {
+	Station string
+	Until   *Day        // last day; nil for the last member
+	AdjustC [12]float64 // added to daily values, January to December, degC
+	ErrorC  float64     // standard error of that, degC
+	Source  string
 }
 
 // DayStart returns the instant at which the station's day begins.

@@ -19,6 +19,7 @@ const usage = `thawledger keeps account of how much thaw each surface on frozen 
   thawledger feed read|reread|take   take a file by hand; read batches again; use one that waits
   thawledger edit ...                correct readings by hand, with author and reason; undo; list
   thawledger approve ...             answer for a record through a day; decide on late corrections
+  thawledger station compare A B     two records side by side, and the adjustment that joins them
   thawledger version
 
 Each takes --help. Screening figures: local codes and a licensed engineer decide.
@@ -47,6 +48,8 @@ func (p program) run(ctx context.Context, args []string) error {
 		return p.feed(ctx, rest)
 	case "edit":
 		return p.edit(ctx, rest)
+	case "station":
+		return p.station(ctx, rest)
 	case "approve":
 		return p.approve(ctx, rest)
 	case "version", "--version":

@@ -60,10 +60,10 @@ func Edited(edits []Edit, in []Input) []Input {
 				edited.Quality = pipeline.QualityWrong
 			case pipeline.EditOffset:
 				edited.ValueC += e.Amount
-				edited.Quality = markChanged(edited.Quality)
+				edited.Quality = MarkChanged(edited.Quality)
 			case pipeline.EditShift:
 				edited.StartS += int64(e.Amount)
-				edited.Quality = markChanged(edited.Quality)
+				edited.Quality = MarkChanged(edited.Quality)
 			}
 		}
 		out = append(out, edited)
@@ -78,7 +78,9 @@ func Edited(edits []Edit, in []Input) []Input {
 	return out
 }
 
-func markChanged(q pipeline.Quality) pipeline.Quality {
+// MarkChanged returns the mark of a value that was good by q and has been changed:
+// changed, unless q says worse.
+func MarkChanged(q pipeline.Quality) pipeline.Quality {
 	if q == pipeline.QualityWrong || q == pipeline.QualityMissing {
 		return q
 	}

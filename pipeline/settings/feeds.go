@@ -30,7 +30,7 @@ func (r *reader) readFeeds(s *Settings, o *object, stations map[string]*pipeline
 		return
 	}
 	for _, st := range s.Stations {
-		if !fed[st.ID] && len(r.faults) == 0 {
+		if !fed[st.ID] && len(st.Joined) == 0 && len(r.faults) == 0 {
 			r.warn(o.vals["stations"], "stations", "no feed can name station %s", st.ID)
 		}
 	}
@@ -88,6 +88,10 @@ func (r *reader) clocks(o *object, c *pipeline.StationColumn, stations map[strin
 			r.fault(at, o.at("station.map"), known("stations", ids), "%q stands for station %q, which there is not", theirs, ours)
 		}
 	}
+	if c.Constant != "" && stations[c.Constant] != nil && len(stations[c.Constant].Joined) > 0 {
+		r.fault(at, o.at("station.constant"), "name one of its members", "%s is a joined record and has no readings of its own", c.Constant)
+		return
+	}
 	if c.Constant != "" {
 		id := c.Constant
 		if ours, ok := c.Map[id]; ok {
@@ -101,6 +105,8 @@ func (r *reader) clocks(o *object, c *pipeline.StationColumn, stations map[strin
 		return
 	}
 	for id, st := range stations {
-		c.Clocks[id] = clock(st)
+		if len(st.Joined) == 0 {
+			c.Clocks[id] = clock(st)
+		}
 	}
 }

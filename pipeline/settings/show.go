@@ -181,15 +181,43 @@ func writeStation(t *tree, st *pipeline.Station) {
 	t.number("elevation_m", st.ElevationM)
 	t.text("utc_offset", offsetText(st.UTCOffset))
 	t.text("day_starts", fmt.Sprintf("%02d:%02d", int(st.DayStarts.Hours()), int(st.DayStarts.Minutes())%60))
-	t.sub("daily_mean", func(t *tree) {
-		t.text("rule", string(st.Mean))
-		t.number("min_hours", float64(st.MinHours))
-		t.number("longest_hole", float64(st.MaxHole))
-	})
+	if len(st.Joined) == 0 {
+		t.sub("daily_mean", func(t *tree) {
+			t.text("rule", string(st.Mean))
+			t.number("min_hours", float64(st.MinHours))
+			t.number("longest_hole", float64(st.MaxHole))
+		})
+	}
 	t.number("base_c", st.BaseC)
 	t.number("fill_days", float64(st.FillDays))
 	t.text("thaw_year", st.ThawYear.String())
 	t.text("freeze_year", st.FreezeYear.String())
+	if len(st.Facts) > 0 {
+		t.list("history", len(st.Facts), func(i int, t *tree) {
+			f := &st.Facts[i]
+			t.text("what", string(f.What))
+			t.text("from", f.From.String())
+			t.text("to", f.To.String())
+			t.word("note", f.Note)
+		})
+	}
+	if len(st.Joined) > 0 {
+		t.list("joined", len(st.Joined), func(i int, t *tree) { writeMember(t, &st.Joined[i]) })
+	}
+}
+
+func writeMember(t *tree, m *pipeline.Member) {
+	t.text("station", m.Station)
+	if m.Until != nil {
+		t.text("until", m.Until.String())
+	}
+	l := &yaml.Node{Kind: yaml.SequenceNode, Style: yaml.FlowStyle}
+	for _, c := range m.AdjustC {
+		l.Content = append(l.Content, &yaml.Node{Kind: yaml.ScalarNode, Value: strconv.FormatFloat(c, 'g', -1, 64)})
+	}
+	t.key("adjust_c", l)
+	t.number("error_c", m.ErrorC)
+	t.word("source", m.Source)
 }
 
 func offsetText(d time.Duration) string {

@@ -54,6 +54,7 @@ func (r *reader) readStations(s *Settings, o *object, within func(string) string
 	for i := range s.Stations {
 		out[s.Stations[i].ID] = &s.Stations[i]
 	}
+	r.joinedRecords(s, out, seen)
 	return out
 }
 
@@ -69,8 +70,15 @@ func (r *reader) station(o *object) pipeline.Station {
 	if st.Name == "" {
 		st.Name = st.ID
 	}
+	st.Joined = r.members(o)
 	mean := o
-	if v := o.vals["daily_mean"]; v != nil && v.Kind == yaml.MappingNode {
+	if len(st.Joined) > 0 {
+		st.Mean = pipeline.MeanMaxMin // of no effect; its members have their own
+		o.known = append(o.known, "daily_mean")
+		if o.has("daily_mean") {
+			r.fault(o.keys["daily_mean"], o.at("daily_mean"), "leave it out", "a joined record takes daily values from others, which have rules of their own")
+		}
+	} else if v := o.vals["daily_mean"]; v != nil && v.Kind == yaml.MappingNode {
 		mean = r.object(o.get("daily_mean"), o.at("daily_mean"), o.node)
 		st.Mean = oneOf(mean, "rule", "", pipeline.MeanRules...)
 	} else {
@@ -87,6 +95,7 @@ func (r *reader) station(o *object) pipeline.Station {
 		thaw, freeze = freeze, thaw
 	}
 	st.ThawYear, st.FreezeYear = o.monthDay("thaw_year", thaw), o.monthDay("freeze_year", freeze)
+	st.Facts = r.facts(o)
 	o.done()
 	return st
 }

@@ -103,13 +103,19 @@ func (db *DB) Edits(ctx context.Context, station string) ([]Edit, error) {
 	return collectEdits(rows)
 }
 
-// Edits returns the station's edits that apply, oldest first.
-func (t *Take) Edits(ctx context.Context) ([]Edit, error) {
+// Edits returns the station's edits that apply, oldest first, after them its days
+// of maintenance as exclusions.
+func (t *Take) Edits(ctx context.Context, st *pipeline.Station) ([]Edit, error) {
 	rows, err := t.tx.Query(ctx, `select `+editColumns+` from thaw.edits where station = $1 and undone_at is null order by edit_id`, t.station)
 	if err != nil {
 		return nil, fmt.Errorf("read edits of %s: %w", t.station, err)
 	}
-	return collectEdits(rows)
+	edits, err := collectEdits(rows)
+	if err != nil {
+		return nil, err
+	}
+	spells, err := t.maintenance(ctx, st)
+	return append(edits, spells...), err
 }
 
 func collectEdits(rows pgx.Rows) ([]Edit, error) {

@@ -120,11 +120,14 @@ type DayRow struct {
 }
 
 // Days returns the station's daily values in order of date.
-func (t *Take) Days(ctx context.Context) ([]DayRow, error) {
+func (t *Take) Days(ctx context.Context) ([]DayRow, error) { return t.DaysOf(ctx, t.station) }
+
+// DaysOf returns the daily values of any station in order of date.
+func (t *Take) DaysOf(ctx context.Context, station string) ([]DayRow, error) {
 	rows, err := t.tx.Query(ctx, `select day, mean_c, max_c, min_c, low_c, high_c, origin, hours, longest_hole, quality, mean_rule
-		from thaw.daily_values where station = $1 order by day`, t.station)
+		from thaw.daily_values where station = $1 order by day`, station)
 	if err != nil {
-		return nil, fmt.Errorf("read daily values of %s: %w", t.station, err)
+		return nil, fmt.Errorf("read daily values of %s: %w", station, err)
 	}
 	out, err := pgx.CollectRows(rows, func(r pgx.CollectableRow) (DayRow, error) {
 		var (
@@ -138,7 +141,7 @@ func (t *Take) Days(ctx context.Context) ([]DayRow, error) {
 		return d, err
 	})
 	if err != nil {
-		return nil, fmt.Errorf("read daily values of %s: %w", t.station, err)
+		return nil, fmt.Errorf("read daily values of %s: %w", station, err)
 	}
 	return out, nil
 }

@@ -40,7 +40,7 @@ func (db *DB) State(ctx context.Context, s Stated) error {
 		if err != nil {
 			return fmt.Errorf("record settings: %w", err)
 		}
-		for _, f := range []func(context.Context, pgx.Tx, Stated) error{stateStations, stateFeeds, stateSites} {
+		for _, f := range []func(context.Context, pgx.Tx, Stated) error{stateStations, stateHistory, stateMembers, stateFeeds, stateSites} {
 			if err := f(ctx, tx, s); err != nil {
 				return err
 			}

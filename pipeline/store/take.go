@@ -83,7 +83,8 @@ func (t *Take) Station(ctx context.Context) (*pipeline.Station, error) {
 			return nil, fmt.Errorf("read station %s: %q is not a month and day", t.station, m.text)
 		}
 	}
-	return s, nil
+	s.Joined, err = t.members(ctx)
+	return s, err
 }
 
 // PartState is what the ledger knows of a part that was taken from the bus.
@@ -154,6 +155,12 @@ func (t *Take) CommitParts(ctx context.Context, parts []*pipeline.Part, fates []
 
 // AddChange leaves a line for the judge: surfaces on this station are to be
 // judged from a day on.
+// Records that are joined from this one and others are to be made anew.
 func (t *Take) AddChange(ctx context.Context, from pipeline.Day) error {
+	_, err := t.tx.Exec(ctx, `update thaw.stations set recompute = true
+		where station in (select station from thaw.station_members where member = $1) and not recompute`, t.station)
+	if err != nil {
+		return fmt.Errorf("mark records joined from %s: %w", t.station, err)
+	}
 	return addChange(ctx, t.tx, t.station, from)
 }
