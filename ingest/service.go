@@ -57,7 +57,7 @@ func New(c Config) *Service {
 	s := &Service{Config: c, folders: map[string]*feed.Folder{}, failed: map[int64]int{}, looks: map[string]look{}, climates: map[string]knownClimate{}}
 	for i := range s.Feeds {
 		f := &s.Feeds[i]
-		s.folders[f.Name] = feed.NewFolder(f.Folder, f.Pattern, f.Settle)
+		s.folders[f.Name] = feed.NewFolder(f.Folder, f.Pattern, f.Subfolders, f.Settle)
 	}
 	return s
 }
@@ -155,8 +155,9 @@ func (s *Service) arrivals(ctx context.Context, f *pipeline.Feed) (unsettled int
 		same := ok && last.Bytes == file.Bytes && last.SourceTime.Equal(file.Written)
 		return same && !(f.Grows && last.Position < last.Bytes && s.stoodStill(file))
 	})
+	var failed []error
 	if err != nil {
-		return 0, fmt.Errorf("look at feed %s: %w", f.Name, err)
+		failed = append(failed, fmt.Errorf("look at feed %s: %w", f.Name, err))
 	}
 	for _, file := range files {
 		if ctx.Err() != nil {
@@ -164,13 +165,17 @@ func (s *Service) arrivals(ctx context.Context, f *pipeline.Feed) (unsettled int
 		}
 		changed, err := s.arrival(ctx, f, folder, file, seen[file.Name])
 		if err != nil {
-			return unsettled, fmt.Errorf("take %s of feed %s: %w", file.Name, f.Name, err)
+			// One file that cannot be taken does not keep the others.
+			failed = append(failed, fmt.Errorf("take %s of feed %s: %w", file.Name, f.Name, err))
 		}
 		if changed {
 			unsettled++
 		}
+		if store.Temporary(err) {
+			break
+		}
 	}
-	return unsettled, nil
+	return unsettled, errors.Join(failed...)
 }
 
 // earlier keeps a source whose clock is ahead from winning over every later

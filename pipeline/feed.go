@@ -5,12 +5,14 @@ import "time"
 // Feed is where a station's CSV comes from, how often, and how its rows become
 // readings.
 type Feed struct {
-	Name     string
-	Folder   string        // folder that files arrive in
-	Pattern  string        // which of its files, as path.Match has it
-	Settle   time.Duration // a file is taken when name, size and time have stood still for so long
-	Schedule string        // cron schedule, UTC
-	Rank     int           // between feeds the highest rank makes the daily value
+	Name    string
+	Folder  string // folder that files arrive in
+	Pattern string // which of its files, as path.Match has it
+	// Subfolders says that files lie in folders below it too.
+	Subfolders bool
+	Settle     time.Duration // a file is taken when name, size and time have stood still for so long
+	Schedule   string        // cron schedule, UTC
+	Rank       int           // between feeds the highest rank makes the daily value
 	// ReplacesSpan says that a file replaces all that the feed said of a station
 	// between the first and the last reading that the file has of it: what is
 	// absent then is withdrawn.

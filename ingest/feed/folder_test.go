@@ -47,7 +47,7 @@ func TestLook(t *testing.T) {
 	if err := os.Symlink(filepath.Join(outside, "secret"), filepath.Join(dir, "link.csv")); err != nil {
 		t.Fatal(err)
 	}
-	f := NewFolder(dir, "*.csv", 10*time.Second)
+	f := NewFolder(dir, "*.csv", false, 10*time.Second)
 	settled, unsettled, err := f.Look(noon, func(f File) bool { return f.Name == "known.csv" })
 	if err != nil {
 		t.Fatal(err)
@@ -61,7 +61,7 @@ func TestLook(t *testing.T) {
 func TestLookAheadClock(t *testing.T) {
 	dir := t.TempDir()
 	put(t, dir, "a.csv", "1", noon.Add(time.Hour))
-	f := NewFolder(dir, "*", 10*time.Second)
+	f := NewFolder(dir, "*", false, 10*time.Second)
 	for _, tc := range []struct {
 		after time.Duration
 		want  int
@@ -76,7 +76,7 @@ func TestLookAheadClock(t *testing.T) {
 func TestUnchanged(t *testing.T) {
 	dir := t.TempDir()
 	put(t, dir, "a.csv", "1", noon.Add(-time.Hour))
-	f := NewFolder(dir, "*", 0)
+	f := NewFolder(dir, "*", false, 0)
 	settled, _, err := f.Look(noon, none)
 	if err != nil || len(settled) != 1 {
 		t.Fatal(settled, err)

@@ -39,7 +39,7 @@ func (r *reader) readFeeds(s *Settings, o *object, stations map[string]*pipeline
 func (r *reader) feed(o *object, s *Settings, stations map[string]*pipeline.Station, within func(string) string) pipeline.Feed {
 	zero := 0.0
 	f := pipeline.Feed{
-		Name: o.id("name"), Folder: within(o.text("folder", "name the folder that files arrive in")), Pattern: o.textOr("pattern", "*.csv"),
+		Name: o.id("name"), Folder: within(o.text("folder", "name the folder that files arrive in")), Pattern: o.textOr("pattern", "*.csv"), Subfolders: o.yes("subfolders"),
 		Settle: o.duration("settle", 10*time.Second), Schedule: o.textOr("every", "@every 5m"), Rank: o.whole("rank", &zero, -1000, 1000),
 		ReplacesSpan: o.yes("replaces_span"), Grows: o.yes("grows"),
 	}

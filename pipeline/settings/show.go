@@ -288,6 +288,7 @@ func writeFeed(t *tree, f *pipeline.Feed) {
 	t.text("name", f.Name)
 	t.text("folder", f.Folder)
 	t.text("pattern", f.Pattern)
+	t.yes("subfolders", f.Subfolders)
 	t.duration("settle", f.Settle)
 	t.text("every", f.Schedule)
 	t.number("rank", float64(f.Rank))
