@@ -74,7 +74,11 @@ type querier interface {
 // recorded fills in AppliedAt.
 func recorded(ctx context.Context, q querier, all []Step) error {
 	var there bool
-	if err := q.QueryRow(ctx, `select to_regclass('thaw.schema_steps') is not null`).Scan(&there); err != nil {
+	// to_regclass may answer from a cache that has not heard of what another has
+	// committed while this transaction waited for the lock.
+	err := q.QueryRow(ctx, `select exists (select 1 from pg_class c join pg_namespace n on n.oid = c.relnamespace
+		where n.nspname = 'thaw' and c.relname = 'schema_steps')`).Scan(&there)
+	if err != nil {
 		return fmt.Errorf("look for schema: %w", err)
 	}
 	if !there {
@@ -180,7 +184,15 @@ func (db *DB) useTimescale(ctx context.Context) error {
 	if !offered || plain {
 		return nil
 	}
-	if _, err := db.pool.Exec(ctx, `create extension if not exists timescaledb`); err != nil {
+	err = db.within(ctx, func(tx pgx.Tx) error {
+		// "if not exists" does not help two who begin at once.
+		if err := lock(ctx, tx, lockSchema, "schema"); err != nil {
+			return err
+		}
+		_, err := tx.Exec(ctx, `create extension if not exists timescaledb`)
+		return err
+	})
+	if err != nil {
 		return fmt.Errorf("create extension timescaledb: %w", err)
 	}
 	// A library loaded in mid-connection refuses some calls: start afresh.
