@@ -1,6 +1,7 @@
 package store_test
 
 import (
+	"context"
 	"errors"
 	"strings"
 	"sync"
@@ -19,6 +20,11 @@ func fresh(t *testing.T, name string) (url string) {
 	if err := pipelinetest.Exec(t.Context(), admin, "create database "+name); err != nil {
 		t.Fatal(err)
 	}
+	t.Cleanup(func() {
+		if err := pipelinetest.Exec(context.Background(), admin, "drop database "+name+" with (force)"); err != nil {
+			t.Error(err)
+		}
+	})
 	return pipelinetest.Server(t, name)
 }
 
