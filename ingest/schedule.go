@@ -21,8 +21,7 @@ func (s *Service) schedule(intake context.Context) (stop func(context.Context), 
 	log := cronLog{s.Log}
 	c := cron.New(cron.WithLocation(time.UTC), cron.WithLogger(log),
 		cron.WithChain(cron.SkipIfStillRunning(log), cron.Recover(log)))
-	for i := range s.sources() {
-		f := &s.Feeds[i]
+	for _, f := range s.sources() {
 		if _, err := c.AddFunc(f.Schedule, func() { s.look(intake, f) }); err != nil {
 			return nil, fmt.Errorf("schedule feed %s: %w", f.Name, err)
 		}

@@ -68,8 +68,8 @@ func New(c Config) *Service {
 func (s *Service) Run(intake, work context.Context) error {
 	s.reopenHeld(intake)
 	s.finish(intake)
-	for i := range s.sources() {
-		s.look(intake, &s.Feeds[i])
+	for _, f := range s.sources() {
+		s.look(intake, f)
 	}
 	stop, err := s.schedule(intake)
 	if err != nil {
@@ -89,11 +89,13 @@ func (s *Service) Run(intake, work context.Context) error {
 }
 
 // sources returns the feeds that are looked at.
-func (s *Service) sources() []pipeline.Feed {
-	if s.DeliveriesOnly {
-		return nil
+func (s *Service) sources() (out []*pipeline.Feed) {
+	for i := range s.Feeds {
+		if s.Feeds[i].Folder != "" && !s.DeliveriesOnly {
+			out = append(out, &s.Feeds[i])
+		}
 	}
-	return s.Feeds
+	return out
 }
 
 // Settled says whether every feed was looked at and nothing in it is still
@@ -103,15 +105,15 @@ func (s *Service) Settled(ctx context.Context) (bool, error) {
 	var again []*pipeline.Feed
 	missing := 0
 	var failed []error
-	for i := range s.sources() {
-		l, ok := s.looks[s.Feeds[i].Name]
+	for _, f := range s.sources() {
+		l, ok := s.looks[f.Name]
 		switch {
 		case !ok:
 			missing++
 		case l.err != nil:
 			failed = append(failed, l.err)
 		case l.unsettled > 0:
-			again = append(again, &s.Feeds[i])
+			again = append(again, f)
 		}
 	}
 	s.reading.Unlock()
@@ -124,10 +126,10 @@ func (s *Service) Settled(ctx context.Context) (bool, error) {
 // Look looks at every feed now, whatever their schedules.
 func (s *Service) Look(ctx context.Context) error {
 	var failed []error
-	for i := range s.Feeds {
-		s.look(ctx, &s.Feeds[i])
+	for _, f := range s.sources() {
+		s.look(ctx, f)
 		s.reading.Lock()
-		failed = append(failed, s.looks[s.Feeds[i].Name].err)
+		failed = append(failed, s.looks[f.Name].err)
 		s.reading.Unlock()
 	}
 	return errors.Join(failed...)

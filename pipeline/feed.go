@@ -6,7 +6,7 @@ import "time"
 // readings.
 type Feed struct {
 	Name    string
-	Folder  string // folder that files arrive in
+	Folder  string // folder that files arrive in; "" for a feed that is only fetched or pushed
 	Pattern string // which of its files, as path.Match has it
 	// Subfolders says that files lie in folders below it too.
 	Subfolders bool
@@ -20,6 +20,8 @@ type Feed struct {
 	// Grows says that lines are only ever added to a file: once it was read, only
 	// what was added is.
 	Grows  bool
+	Remote *Remote // where files are fetched from; nil for nowhere
+	Push   *Push   // how files may be pushed; nil for not at all
 	Layout Layout
 }
 

@@ -39,9 +39,15 @@ func (r *reader) readFeeds(s *Settings, o *object, stations map[string]*pipeline
 func (r *reader) feed(o *object, s *Settings, stations map[string]*pipeline.Station, within func(string) string) pipeline.Feed {
 	zero := 0.0
 	f := pipeline.Feed{
-		Name: o.id("name"), Folder: within(o.text("folder", "name the folder that files arrive in")), Pattern: o.textOr("pattern", "*.csv"), Subfolders: o.yes("subfolders"),
+		Name: o.id("name"), Folder: within(o.textOr("folder", "")), Remote: r.remote(o, within), Push: r.push(o, within), Pattern: o.textOr("pattern", "*.csv"), Subfolders: o.yes("subfolders"),
 		Settle: o.duration("settle", 10*time.Second), Schedule: o.textOr("every", "@every 5m"), Rank: o.whole("rank", &zero, -1000, 1000),
 		ReplacesSpan: o.yes("replaces_span"), Grows: o.yes("grows"),
+	}
+	switch {
+	case f.Folder == "" && f.Remote == nil && f.Push == nil:
+		o.missing("folder", "name the folder that files arrive in, or give url or push")
+	case f.Folder != "" && f.Remote != nil:
+		r.fault(o.keys["url"], o.at("url"), "make two feeds of it", "a folder is given as well")
 	}
 	if _, err := path.Match(f.Pattern, ""); err != nil {
 		r.fault(o.vals["pattern"], o.at("pattern"), "write a pattern such as *.csv", "%q is none", f.Pattern)

@@ -19,6 +19,7 @@ type Settings struct {
 	Data     string // data folder; "" if the file names none
 	Store    Store
 	Bus      Bus
+	Listen   Listen
 	Work     Work
 	Stations []pipeline.Station
 	Layouts  map[string]*pipeline.Layout // by name, as declared, for no station yet
@@ -131,6 +132,7 @@ func (r *reader) read(s *Settings, root *yaml.Node, base string) {
 	stations := r.readStations(s, o, within)
 	r.readLayouts(s, o)
 	r.readFeeds(s, o, stations, within)
+	r.readPush(s, r.object(o.get("push"), "push", root), within)
 	r.readSites(s, o, stations)
 	o.done()
 }

@@ -143,6 +143,14 @@ func (s *Settings) write(mark bool) []byte {
 		t.number("failures_allowed", float64(s.Work.FailuresAllowed))
 		t.duration("idle_deadline", s.Work.IdleDeadline)
 	})
+	if s.Listen.Address != "" {
+		t.sub("push", func(t *tree) {
+			t.text("listen", s.Listen.Address)
+			t.word("certificate_file", s.Listen.CertificateFile)
+			t.word("key_file", s.Listen.KeyFile)
+			t.yes("plain", s.Listen.Plain)
+		})
+	}
 	t.list("stations", len(s.Stations), func(i int, t *tree) { writeStation(t, &s.Stations[i]) })
 	t.sub("layouts", func(t *tree) {
 		for _, name := range s.order {
@@ -286,7 +294,22 @@ func writeStationColumn(t *tree, c *pipeline.StationColumn) {
 
 func writeFeed(t *tree, f *pipeline.Feed) {
 	t.text("name", f.Name)
-	t.text("folder", f.Folder)
+	t.word("folder", f.Folder)
+	if m := f.Remote; m != nil {
+		t.sub("url", func(t *tree) {
+			t.text("address", m.URL)
+			t.word("user", m.User)
+			t.word("password_file", m.PasswordFile)
+			t.word("bearer_file", m.BearerFile)
+			t.duration("timeout", m.Timeout)
+		})
+	}
+	if f.Push != nil {
+		t.sub("push", func(t *tree) {
+			t.text("token_file", f.Push.TokenFile)
+			t.number("max_megabytes", float64(f.Push.MaxBytes>>20))
+		})
+	}
 	t.text("pattern", f.Pattern)
 	t.yes("subfolders", f.Subfolders)
 	t.duration("settle", f.Settle)
