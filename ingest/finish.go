@@ -3,6 +3,7 @@ package ingest
 import (
 	"context"
 	"errors"
+	"io/fs"
 	"time"
 
 	"go.uber.org/zap"
@@ -52,7 +53,8 @@ func (s *Service) finishOpen(ctx context.Context) error {
 			continue
 		}
 		failed = append(failed, err)
-		if s.failed[b.ID]++; s.failed[b.ID] >= readFailures && !store.Temporary(err) {
+		// Bytes that are not there may be on a disk that will be: they are waited for.
+		if s.failed[b.ID]++; s.failed[b.ID] >= readFailures && !store.Temporary(err) && !errors.Is(err, fs.ErrNotExist) {
 			counts, _, _, _ := s.firstPass(ctx, b)
 			failed = append(failed, s.DB.HoldBatch(ctx, b.ID, "could not be read: "+err.Error(), counts))
 		}

@@ -9,6 +9,7 @@ import (
 	"go.uber.org/zap"
 
 	"thawledger/ingest/csvfeed"
+	"thawledger/ingest/unpack"
 	"thawledger/pipeline"
 	"thawledger/pipeline/store"
 )
@@ -132,12 +133,25 @@ func (s *Service) decode(ctx context.Context, b *store.Batch, part func(*pipelin
 		return pipeline.Counts{}, err
 	}
 	defer r.Close()
-	p := newParts(b.ID, b.Feed, plan.Series(), part)
-	counts, err := s.decodeFrom(ctx, b, plan, r, sink{p, aside})
+	text, err := unpack.Reader(r, b.Layout.Encoding, unpack.Limits{})
 	if err != nil {
-		return counts, err
+		return pipeline.Counts{}, asHold(err)
+	}
+	defer text.Close()
+	p := newParts(b.ID, b.Feed, plan.Series(), part)
+	counts, err := s.decodeFrom(ctx, b, plan, text, sink{p, aside})
+	if err != nil {
+		return counts, asHold(err)
 	}
 	return counts, p.end()
+}
+
+// asHold makes a reason to hold the batch back of a fault of its bytes.
+func asHold(err error) error {
+	if f, ok := errors.AsType[*unpack.FaultError](err); ok {
+		return &csvfeed.HoldError{Text: f.Error()}
+	}
+	return err
 }
 
 // decodeFrom reads a batch's bytes, with the beginning of its file where they are

@@ -29,9 +29,10 @@ type Feed struct {
 // or by its number from 1.
 type Layout struct {
 	Name      string        `json:"name"`
-	Delimiter string        `json:"delimiter"`  // one character, or "space" for any run of white space
-	Comment   string        `json:"comment"`    // lines that begin so are comments; "" for none
-	NamesLine int           `json:"names_line"` // line that holds the column names, from 1; 0 for none
+	Encoding  string        `json:"encoding,omitempty"` // as package unpack names it; "" for utf-8
+	Delimiter string        `json:"delimiter"`          // one character, or "space" for any run of white space
+	Comment   string        `json:"comment"`            // lines that begin so are comments; "" for none
+	NamesLine int           `json:"names_line"`         // line that holds the column names, from 1; 0 for none
 	Time      TimeColumns   `json:"time"`
 	Station   StationColumn `json:"station"`
 	Values    []ValueColumn `json:"values"`

@@ -69,6 +69,9 @@ func (r *reader) feed(o *object, s *Settings, stations map[string]*pipeline.Stat
 			o.missing("station", "say here or in the layout which station a row is of")
 		}
 	}
+	if f.Grows && f.Layout.Encoding != "" {
+		r.fault(o.keys["grows"], o.at("grows"), "leave it out, or have the file written in UTF-8", "where a growing file ends is found in UTF-8 only, and its layout says %s", f.Layout.Encoding)
+	}
 	if f.Grows && f.ReplacesSpan {
 		r.fault(o.keys["replaces_span"], o.at("replaces_span"), "leave one of them out", "what a file has grown by replaces nothing, and grows is given")
 	}

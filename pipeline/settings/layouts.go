@@ -36,6 +36,9 @@ func (r *reader) layout(name string, o *object) pipeline.Layout {
 		Name: name, Delimiter: o.delimiter(), Comment: o.textOr("comment", ""),
 		NamesLine: o.whole("names_line", &zero, 0, 1000),
 	}
+	if l.Encoding = oneOf(o, "encoding", "utf-8", encodings...); l.Encoding == "utf-8" {
+		l.Encoding = ""
+	}
 	l.Time = r.timeColumns(r.object(o.get("time"), o.at("time"), o.node))
 	if o.has("station") {
 		l.Station = r.stationColumn(r.object(o.get("station"), o.at("station"), o.node))
@@ -56,6 +59,9 @@ func (r *reader) layout(name string, o *object) pipeline.Layout {
 	}
 	return l
 }
+
+// encodings are those that ingest can read; a test keeps the two lists the same.
+var encodings = []string{"utf-8", "utf-16", "utf-16le", "utf-16be", "latin-1", "windows-1252"}
 
 // sameSeries reports two columns that would give readings of one key.
 func (r *reader) sameSeries(o *object, l pipeline.Layout) {

@@ -242,6 +242,7 @@ func writeLayout(t *tree, l *pipeline.Layout) {
 		delimiter = "tab"
 	}
 	t.text("delimiter", delimiter)
+	t.word("encoding", l.Encoding)
 	t.word("comment", l.Comment)
 	t.number("names_line", float64(l.NamesLine))
 	t.sub("time", func(t *tree) {

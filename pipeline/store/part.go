@@ -90,7 +90,7 @@ type Attempts map[int32]int32
 
 // MarkPublished records that the bus has confirmed parts.
 func (db *DB) MarkPublished(ctx context.Context, id int64, parts []int32) error {
-	_, err := db.pool.Exec(ctx, `update thaw.batch_parts set published_at = clock_timestamp()
+	_, err := db.pool.Exec(ctx, `update thaw.batch_parts set published_at = clock_timestamp(), confirmed = confirmed + 1
 		where batch_id = $1 and part = any($2)`, id, parts)
 	if err != nil {
 		return fmt.Errorf("record published parts of batch %d: %w", id, err)
@@ -120,13 +120,13 @@ const Unconfirmed = time.Duration(math.MaxInt64)
 
 // NextAttempt counts one more attempt for the open parts of a batch that the bus
 // never confirmed, or confirmed at least age ago, and returns them. A part that
-// has had all the attempts that are allowed is marked stuck instead.
+// the bus has confirmed, and lost, as often as is allowed is marked stuck instead.
 func (db *DB) NextAttempt(ctx context.Context, id int64, age time.Duration, allowed int) (Attempts, error) {
 	out := Attempts{}
 	err := db.within(ctx, func(tx pgx.Tx) error {
 		_, err := tx.Exec(ctx, `update thaw.batch_parts p set stuck_at = clock_timestamp(),
-				reason = format('published %s times and never committed', attempt)
-			where batch_id = $1 and published_at <= clock_timestamp() - $2::interval and attempt >= $3 and `+open, id, age, allowed)
+				reason = format('published %s times and never committed', confirmed)
+			where batch_id = $1 and published_at <= clock_timestamp() - $2::interval and confirmed >= $3 and `+open, id, age, allowed)
 		if err != nil {
 			return err
 		}

@@ -97,7 +97,8 @@ func Temporary(err error) bool {
 	if _, ok := errors.AsType[*pgconn.ConnectError](err); ok {
 		return true
 	}
-	if _, ok := errors.AsType[net.Error](err); ok {
+	// Not net.Error: every errno is one, a file that is not there too.
+	if _, ok := errors.AsType[*net.OpError](err); ok {
 		return true
 	}
 	return errors.Is(err, io.EOF) || errors.Is(err, io.ErrUnexpectedEOF) || errors.Is(err, net.ErrClosed) ||
