@@ -2,6 +2,7 @@ package main
 
 import (
 	"bytes"
+	"compress/gzip"
 	"fmt"
 	"os"
 	"path/filepath"
@@ -9,6 +10,14 @@ import (
 	"strings"
 	"testing"
 )
+
+func gzipped(text string) string {
+	var b bytes.Buffer
+	w := gzip.NewWriter(&b)
+	_, _ = w.Write([]byte(text)) // memory does not fail
+	_ = w.Close()
+	return b.String()
+}
 
 // TestBadInput puts files that no one would want into a feed's folder, and finds
 // each in the ledger with the place and the reason, and everything that is good
@@ -41,6 +50,11 @@ func TestBadInput(t *testing.T) {
 		{"thousands mark", "time,t\n" + good + "2025-07-10 04:00,\"1,234.5\"\n", done, "", "bad_number:6", 4},
 		{"no such warmth", "time,t\n" + good + "2025-07-10 04:00,999\n", done, "", "out_of_bounds:6", 4},
 		{"quote not closed", "time,t\n" + good + "2025-07-10 04:00,\"5\n", done, "", "bad_quote:6", 4},
+		{"gzip", gzipped("time,t\n2025-08-01 00:00,1\n2025-08-01 01:00,2\n"), done, "", "", 2},
+		{"shortened gzip", gzipped("time,t\n" + good)[:40], held, "gzip", "", 0},
+		{"gzip bomb", gzipped("time,t\n" + strings.Repeat("\n", 8<<20)), held, "times", "", 0},
+		{"zip", "PK\x03\x04" + strings.Repeat("x", 100), held, "a zip archive; send gzip or zstd", "", 0},
+		{"UTF-16", "\xff\xfet\x00i\x00m\x00e\x00", held, "utf-16", "", 0},
 		{"nearly all bad", "time,t\n2025-07-10 00:00,1\nx,1\ny,2\nz,3\n", held, "3 of 4 rows (75 %) could not be read", "bad_time:3 bad_time:4 bad_time:5", 0},
 	}
 	files := map[string]string{"outside/secret.csv": "time,t\n" + good, "feed/whole.csv": "time,t\n" + good}

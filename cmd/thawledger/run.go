@@ -13,6 +13,8 @@ import (
 	"go.uber.org/zap/zapcore"
 	"golang.org/x/term"
 
+	"thawledger/ingest/csvfeed"
+	"thawledger/pipeline"
 	"thawledger/pipeline/lifecycle"
 	"thawledger/pipeline/settings"
 	"thawledger/pipeline/store"
@@ -180,7 +182,7 @@ func (p program) settled(ctx context.Context, db *store.DB) error {
 
 // load reads settings; faults and warnings are shown as they are.
 func (p program) load(file string) (*settings.Settings, error) {
-	set, warnings, err := settings.Load(file)
+	set, warnings, err := settings.Load(file, readable)
 	for _, w := range warnings {
 		fmt.Fprintf(p.err, "warning: %s\n", w)
 	}
@@ -191,6 +193,13 @@ func (p program) load(file string) (*settings.Settings, error) {
 		set.Data = defaultData()
 	}
 	return set, nil
+}
+
+// readable checks that ingest can read by a layout, so that what it refuses is
+// known before anything starts.
+func readable(l *pipeline.Layout) error {
+	_, err := csvfeed.Compile(l)
+	return err
 }
 
 // logger writes one line an event: plain text on a terminal, JSON elsewhere.

@@ -65,9 +65,13 @@ func (w Warning) String() string { return Fault(w).String() }
 // maxBytes is far above any settings that a person writes.
 const maxBytes = 16 << 20
 
+// Check says what keeps a feed's layout from being made ready for reading; one
+// fault a line, each beginning with the layout's field and a colon.
+type Check func(*pipeline.Layout) error
+
 // Load reads the settings file at path. Relative folders and files in it are
 // relative to its own folder. The error is a Faults, or one of reading the file.
-func Load(path string) (*Settings, []Warning, error) {
+func Load(path string, checks ...Check) (*Settings, []Warning, error) {
 	info, err := os.Stat(path)
 	if err == nil && info.Size() > maxBytes {
 		err = fmt.Errorf("%s has %d bytes, settings have at most %d", path, info.Size(), maxBytes)
@@ -79,16 +83,19 @@ func Load(path string) (*Settings, []Warning, error) {
 	if err != nil {
 		return nil, nil, fmt.Errorf("read settings: %w", err)
 	}
-	return Parse(path, data, filepath.Dir(path))
+	return Parse(path, data, filepath.Dir(path), checks...)
 }
 
 // Parse reads settings from data; name is how faults call the file, base is the
 // folder that relative names in it are relative to.
-func Parse(name string, data []byte, base string) (*Settings, []Warning, error) {
+func Parse(name string, data []byte, base string, checks ...Check) (*Settings, []Warning, error) {
 	r := &reader{file: name, defaulted: map[string]bool{}}
 	s := &Settings{Layouts: map[string]*pipeline.Layout{}, defaulted: r.defaulted}
 	if root := r.root(data); root != nil {
 		r.read(s, root, base)
+		if len(r.faults) == 0 {
+			r.checkLayouts(s, root, checks)
+		}
 	}
 	if len(r.faults) > 0 {
 		return nil, r.warnings, r.faults.sorted()
