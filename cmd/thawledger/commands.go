@@ -16,6 +16,7 @@ const usage = `thawledger keeps account of how much thaw each surface on frozen 
   thawledger schema [apply]          show the database's schema, or bring it up to date
   thawledger standing [SITE]         how surfaces stand against their design values
   thawledger ledger                  what arrived and what became of it
+  thawledger feed try FILE           what a feed would make of a file, or a layout for an unknown one
   thawledger feed read|reread|take   take a file by hand; read batches again; use one that waits
   thawledger edit ...                correct readings by hand, with author and reason; undo; list
   thawledger approve ...             answer for a record through a day; decide on late corrections

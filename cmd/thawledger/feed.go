@@ -10,7 +10,8 @@ import (
 	"thawledger/pipeline/settings"
 )
 
-const feedSynopsis = `feed reread FEED [BATCH...] [--settings FILE]: read archived batches of a feed again by its present layout
+const feedSynopsis = `feed try FILE [--feed FEED]: read a file as a feed would, using nothing; without --feed propose a layout for it
+thawledger feed reread FEED [BATCH...] [--settings FILE]: read archived batches of a feed again by its present layout
 thawledger feed take BATCH [--settings FILE]: use a batch that waits, or is held back as implausible
 thawledger feed read FEED FILE... [--settings FILE]: take files as if the feed had brought them; - is standard input`
 
@@ -22,6 +23,8 @@ func (p program) feed(ctx context.Context, args []string) error {
 			return p.feedReread(ctx, args[1:])
 		case "take":
 			return p.feedTake(ctx, args[1:])
+		case "try":
+			return p.feedTry(ctx, args[1:])
 		case "read":
 			return p.feedRead(ctx, args[1:])
 		}
