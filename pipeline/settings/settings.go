@@ -182,7 +182,7 @@ func (r *reader) readBus(s *Settings, o *object, within func(string) string) {
 }
 
 func (r *reader) readWork(s *Settings, o *object) {
-	commit, republish, failures := 50000.0, 3.0, 3.0
+	commit, republish, failures := 100000.0, 3.0, 3.0
 	s.Work = Work{
 		CommitReadings:   o.whole("commit_readings", &commit, 500, 1e6),
 		RepublishAfter:   o.duration("republish_after", 2*time.Minute),
