@@ -73,7 +73,7 @@ func (p program) schema(ctx context.Context, args []string) error {
 		return err
 	}
 	if apply && set.Store.URL == "" {
-		if err := os.MkdirAll(filepath.Join(set.Data, "postgresql"), 0o700); err != nil {
+		if err := os.MkdirAll(filepath.Join(set.Data, "postgresql"), 0o711); err != nil {
 			return fmt.Errorf("make data folder: %w", err)
 		}
 	}

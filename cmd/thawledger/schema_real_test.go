@@ -1,0 +1,25 @@
+package main
+
+import (
+	"bytes"
+	"fmt"
+	"strings"
+	"testing"
+)
+
+// The schema can be brought up before anything else runs, and is then shown.
+func TestSchemaApply(t *testing.T) {
+	p := newPlace(t, fmt.Sprintf(hourlySettings, "Z", ""), nil)
+	var out bytes.Buffer
+	if status := (program{out: &out, err: &out}).main(t.Context(), []string{"schema", "--settings", p.settings}); status != 1 || !strings.Contains(out.String(), "thawledger schema apply") {
+		t.Errorf("without a database: status %d, %s", status, out.String())
+	}
+	for _, args := range [][]string{{"schema", "apply"}, {"schema"}} {
+		if got := p.run(t, args...); !strings.Contains(got, "0001_stations_and_sites") || strings.Contains(got, "not applied") || !strings.Contains(got, " UTC  ") {
+			t.Errorf("%v:\n%s", args, got)
+		}
+	}
+	if got := p.run(t, "run", "--until-idle"); !strings.Contains(got, "fingerprint") {
+		t.Errorf("run after it:\n%s", got)
+	}
+}
