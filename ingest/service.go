@@ -50,7 +50,11 @@ type Service struct {
 type look struct {
 	unsettled int
 	err       error
+	at        time.Time // by the process's clock
 }
+
+// failedAgain is how soon Settled looks again at a feed that could not be read.
+const failedAgain = time.Second
 
 // New returns an ingest worker.
 func New(c Config) *Service {
@@ -112,6 +116,9 @@ func (s *Service) Settled(ctx context.Context) (bool, error) {
 			missing++
 		case l.err != nil:
 			failed = append(failed, l.err)
+			if time.Since(l.at) >= failedAgain {
+				again = append(again, f)
+			}
 		case l.unsettled > 0:
 			again = append(again, f)
 		}
@@ -143,7 +150,7 @@ func (s *Service) look(ctx context.Context, f *pipeline.Feed) {
 	if err != nil && ctx.Err() == nil {
 		s.Log.Error("feed not read to its end, to be looked at again", zap.String("feed", f.Name), zap.Error(err))
 	}
-	s.looks[f.Name] = look{unsettled, err}
+	s.looks[f.Name] = look{unsettled, err, time.Now()}
 }
 
 func (s *Service) arrivals(ctx context.Context, f *pipeline.Feed) (unsettled int, err error) {

@@ -119,25 +119,34 @@ func (d *daemon) awaitIdle(ctx context.Context, stop context.CancelFunc, feeds b
 	tick := time.NewTicker(25 * time.Millisecond)
 	defer tick.Stop()
 	var last store.Pending
+	var unread time.Time // since when feeds cannot be read
 	for {
-		settled, err := true, error(nil)
+		settled, unreadable := true, error(nil)
 		if feeds {
-			settled, err = d.ingest.Settled(ctx)
+			settled, unreadable = d.ingest.Settled(ctx)
 		}
-		if err == nil {
-			last, err = d.db.Pending(ctx)
-		}
+		pending, err := d.db.Pending(ctx)
 		switch {
 		case ctx.Err() != nil:
 			return nil // stopped from outside: whoever did knows why
 		case err != nil:
 			d.log.Warn("not known whether all has settled", zap.Error(err))
 		default:
+			last = pending
 			show(last)
-			if settled && last.Idle() {
-				stop()
-				return nil
-			}
+		}
+		switch {
+		case unreadable == nil:
+			unread = time.Time{}
+		case unread.IsZero():
+			unread = time.Now()
+		case time.Since(unread) > unreadableFor && err == nil && last.Idle():
+			stop()
+			return fmt.Errorf("feeds cannot be read: %w", unreadable)
+		}
+		if err == nil && unreadable == nil && settled && last.Idle() {
+			stop()
+			return nil
 		}
 		select {
 		case <-ctx.Done():
@@ -149,6 +158,9 @@ func (d *daemon) awaitIdle(ctx context.Context, stop context.CancelFunc, feeds b
 		}
 	}
 }
+
+// unreadableFor is how long a feed may be unreadable while all else has settled.
+const unreadableFor = 5 * time.Second
 
 func describe(p store.Pending, settled bool) string {
 	s := fmt.Sprintf("%d batches being read, %d parts not committed, %d stations to be made anew, %d withdrawals, %d changes to be judged, %d to be told",
