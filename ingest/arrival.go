@@ -14,6 +14,7 @@ import (
 
 	"thawledger/ingest/archive"
 	"thawledger/ingest/feed"
+	"thawledger/ingest/unpack"
 	"thawledger/pipeline"
 	"thawledger/pipeline/store"
 )
@@ -26,7 +27,7 @@ func (s *Service) arrival(ctx context.Context, f *pipeline.Feed, folder *feed.Fo
 		return false, err
 	}
 	defer r.Close()
-	if f.Grows {
+	if f.Grows && !unpack.Compressed(r) { // what is compressed is read whole
 		return s.growth(ctx, f, r, file, last)
 	}
 	kept, err := s.keep(f, file, r)

@@ -87,6 +87,8 @@ func TestBombs(t *testing.T) {
 			runtime.ReadMemStats(&after)
 			if f, ok := errors.AsType[*unpack.FaultError](err); !ok || !strings.Contains(f.Text, tt.because) {
 				t.Errorf("got %v, want a fault with %q", err, tt.because)
+			} else if f.Offset <= 0 || f.Offset > bomb.given || n < 200*f.Offset {
+				t.Errorf("%d bytes of text are said to come of the first %d", n, f.Offset)
 			}
 			if n > tt.text || n < mib {
 				t.Errorf("%d bytes of text came", n)

@@ -130,6 +130,7 @@ func TestCompressionFaults(t *testing.T) {
 		{"zstd dictionary", file(t, "dictionary.csv.zst"), 10, "compress without one"},
 		{"zstd window of 128 MiB", file(t, "window.csv.zst"), 6, "compress without --long"},
 		{"zstd, one segment of 2 GiB", []byte("\x28\xb5\x2f\xfd\xa0\x00\x00\x00\x80\x01\x00\x00"), 9, "more than 33554432 bytes"},
+		{"zstd, reserved block", []byte("\x28\xb5\x2f\xfd\x00\x58\x06\x00\x00"), 9, "damaged at or before here (invalid input: reserved block type"},
 		{"only a skippable frame, and text", []byte("\x50\x2a\x4d\x18\x00\x00\x00\x00time,temp"), 8, "no zstd"},
 	}
 	for _, tt := range tests {

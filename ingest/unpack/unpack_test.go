@@ -234,3 +234,21 @@ func TestClose(t *testing.T) {
 		}
 	}
 }
+
+// goleak would not see what Close ends.
+func TestNoGoroutineWhileOpen(t *testing.T) {
+	for name, delivery := range map[string][]byte{"gzip": gzipped(t, hourlyText(50_000)), "zstd": zstded(t, hourlyText(50_000))} {
+		before := goleak.IgnoreCurrent()
+		r, err := unpack.Reader(bytes.NewReader(delivery), "windows-1252", unpack.Limits{})
+		if err != nil {
+			t.Fatal(err)
+		}
+		if _, err := io.ReadFull(r, make([]byte, 1000)); err != nil {
+			t.Errorf("%s: %v", name, err)
+		}
+		if err := goleak.Find(before); err != nil {
+			t.Errorf("%s: %v", name, err)
+		}
+		r.Close()
+	}
+}
