@@ -40,6 +40,7 @@ type Service struct {
 	// one batch is read at a time: the store is slower than the reading
 	reading sync.Mutex
 	folders map[string]*feed.Folder
+	remotes map[string]remote
 	failed  map[int64]int // how often reading an open batch failed
 	looks   map[string]look
 	// climates are those that readings were last held against, by station
@@ -63,6 +64,7 @@ func New(c Config) *Service {
 		f := &s.Feeds[i]
 		s.folders[f.Name] = feed.NewFolder(f.Folder, f.Pattern, f.Subfolders, f.Settle)
 	}
+	s.remotes = newRemotes(s.Feeds)
 	return s
 }
 
@@ -85,6 +87,7 @@ func (s *Service) Run(intake, work context.Context) error {
 		select {
 		case <-intake.Done():
 			stop(work)
+			s.closeRemotes()
 			return nil
 		case <-tick.C:
 			s.finish(intake)
@@ -144,9 +147,11 @@ func (s *Service) Look(ctx context.Context) error {
 
 // look takes what has newly arrived in a feed's folder.
 func (s *Service) look(ctx context.Context, f *pipeline.Feed) {
+	fetched := s.fetch(ctx, f) // not under the lock: a server may take its time
 	s.reading.Lock()
 	defer s.reading.Unlock()
 	unsettled, err := s.arrivals(ctx, f)
+	err = errors.Join(fetched, err)
 	if err != nil && ctx.Err() == nil {
 		s.Log.Error("feed not read to its end, to be looked at again", zap.String("feed", f.Name), zap.Error(err))
 	}

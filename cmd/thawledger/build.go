@@ -72,6 +72,12 @@ func build(ctx context.Context, set *settings.Settings, log *zap.Logger, now fun
 	if err != nil {
 		return d, err
 	}
+	for i := range set.Feeds {
+		if f := &set.Feeds[i]; f.Remote != nil {
+			// The copy of a file on a web server is read as a folder is.
+			f.Folder, f.Pattern, f.Settle = filepath.Join(set.Data, "fetched", f.Name), "*", 0
+		}
+	}
 	d.ingest = ingest.New(ingest.Config{
 		DB: d.db, Bus: d.bus, Archive: kept, Feeds: set.Feeds, Log: log.Named("ingest"), Now: now,
 		RepublishAfter: set.Work.RepublishAfter, RepublishAllowed: set.Work.RepublishAllowed,

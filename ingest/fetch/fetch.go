@@ -24,7 +24,7 @@ type Config struct {
 	User         string // with PasswordFile: basic authentication
 	PasswordFile string
 	BearerFile   string
-	Folder       string        // where the copy is kept
+	Folder       string        // where the copy is kept, and nothing else; what is remembered of it lies beside, in Folder.state
 	Grows        bool          // lines are only ever added to the file
 	Timeout      time.Duration // of one request; 1 minute if zero
 	Stall        time.Duration // a body may stop coming for so long; 20 s if zero
@@ -96,8 +96,10 @@ func (f *Fetcher) Close() { f.client.CloseIdleConnections() }
 
 // Fetch brings the copy up to date and says whether it changed.
 func (f *Fetcher) Fetch(ctx context.Context) (changed bool, err error) {
-	if err := os.MkdirAll(f.Folder, 0o750); err != nil {
-		return false, fmt.Errorf("make folder of the copy: %w", err)
+	for _, folder := range []string{f.Folder, f.stateFolder()} {
+		if err := os.MkdirAll(folder, 0o750); err != nil {
+			return false, fmt.Errorf("make folder of the copy: %w", err)
+		}
 	}
 	release, err := f.Hosts.take(ctx, f.host)
 	if err != nil {
@@ -123,7 +125,8 @@ type seen struct {
 	Bytes        int64  `json:"bytes"`
 }
 
-func (f *Fetcher) seenPath() string { return filepath.Join(f.Folder, "."+f.name+".seen") }
+func (f *Fetcher) stateFolder() string { return f.Folder + ".state" }
+func (f *Fetcher) seenPath() string    { return filepath.Join(f.stateFolder(), f.name+".json") }
 
 // remembered returns what is known of the copy; nothing if it is not what it was.
 func (f *Fetcher) remembered() (s seen, size int64) {
@@ -223,7 +226,7 @@ func (f *Fetcher) authorize(req *http.Request) error {
 
 // replace puts a whole answer in the place of the copy, if it differs.
 func (f *Fetcher) replace(ctx context.Context, cancel context.CancelFunc, answer *http.Response, now seen) (bool, error) {
-	tmp, err := os.CreateTemp(f.Folder, ".fetching-*")
+	tmp, err := os.CreateTemp(f.stateFolder(), "fetching-*")
 	if err != nil {
 		return false, fmt.Errorf("open copy: %w", err)
 	}

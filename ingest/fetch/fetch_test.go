@@ -21,7 +21,7 @@ func TestMain(m *testing.M) { goleak.VerifyTestMain(m) }
 func fetcher(t *testing.T, c Config) *Fetcher {
 	t.Helper()
 	if c.Folder == "" {
-		c.Folder = t.TempDir()
+		c.Folder = filepath.Join(t.TempDir(), "copy")
 	}
 	c.Pause = func(ctx context.Context, d time.Duration) error { return ctx.Err() }
 	f, err := New(c)
@@ -188,7 +188,7 @@ func TestServersThatMisbehave(t *testing.T) {
 			if n := asked.Load(); n != c.tries {
 				t.Errorf("asked %d times; want %d", n, c.tries)
 			}
-			if left, _ := filepath.Glob(filepath.Join(f.Folder, "*")); len(left) > 0 {
+			if left, _ := filepath.Glob(filepath.Join(f.Folder+"*", "*")); len(left) > 0 {
 				t.Errorf("left behind: %v", left)
 			}
 		})

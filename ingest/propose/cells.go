@@ -71,9 +71,10 @@ func hasDecimalComma(cell string) bool {
 	return strings.Count(cell, ",") == 1 && !strings.Contains(cell, ".") && isNumber(strings.Replace(cell, ",", ".", 1))
 }
 
-// isDateLike reports whether a cell looks like a date or a time of the day.
+// isDateLike reports whether a cell looks like a date or a time of the day, be
+// it one that no layout reads.
 func isDateLike(cell string) bool {
-	digits, marks := 0, 0
+	digits, marks, letters := 0, 0, 0
 	for i := range len(cell) {
 		switch c := cell[i]; {
 		case c >= '0' && c <= '9':
@@ -81,11 +82,13 @@ func isDateLike(cell string) bool {
 		case strings.IndexByte("-/:.", c) >= 0:
 			marks++
 		case strings.IndexByte(" TZ+", c) >= 0:
+		case c|0x20 >= 'a' && c|0x20 <= 'z':
+			letters++ // of a month, or AM
 		default:
 			return false
 		}
 	}
-	return digits >= 3 && marks >= 1 && cell[0] >= '0' && cell[0] <= '9'
+	return digits >= 3 && marks >= 1 && (letters == 0 || letters <= 3 && digits >= 4) && cell[0] >= '0' && cell[0] <= '9'
 }
 
 // isData reports whether a cell is what rows have and names have not.

@@ -13,105 +13,6 @@ type form struct {
 	order  string // of year, month and day, such as YMD; YD for the day of the year
 }
 
-// run is a run of digits that the cells of a column have in common.
-type run struct {
-	least, most int  // digits
-	zeros       bool // some begin with 0 and have two digits
-	same        string
-	varies      bool
-}
-
-// shape is what the cells of a column have in common.
-type shape struct {
-	between []string // what stands before each run, and after the last
-	runs    []run
-}
-
-// evenShare is the share of a column's cells that must have the same shape.
-const evenShare = 0.9
-
-// shapeOf returns the shape of most cells; nil if there is none.
-func shapeOf(cells []string) *shape {
-	counts := map[string]int{}
-	filled, best := 0, ""
-	keys := make([]string, len(cells))
-	var b strings.Builder
-	for i, cell := range cells {
-		if cell == "" || len(cell) > 40 {
-			continue
-		}
-		filled++
-		b.Reset()
-		digits := false
-		for j := range len(cell) {
-			if d := cell[j] >= '0' && cell[j] <= '9'; !d {
-				b.WriteByte(cell[j])
-				digits = false
-			} else if !digits {
-				b.WriteByte('0')
-				digits = true
-			}
-		}
-		keys[i] = b.String()
-		if _, seen := counts[keys[i]]; !seen && len(counts) > 50 {
-			continue
-		}
-		counts[keys[i]]++
-		if counts[keys[i]] > counts[best] {
-			best = keys[i]
-		}
-	}
-	if best == "" || float64(counts[best]) < evenShare*float64(filled) || !strings.Contains(best, "0") || strings.Count(best, "0") > 10 {
-		return nil
-	}
-	s := &shape{between: strings.Split(best, "0")}
-	s.runs = make([]run, len(s.between)-1)
-	for i, cell := range cells {
-		if keys[i] != best {
-			continue
-		}
-		at := 0
-		for k := range s.runs {
-			at += len(s.between[k])
-			end := at
-			for end < len(cell) && cell[end] >= '0' && cell[end] <= '9' {
-				end++
-			}
-			s.runs[k].add(cell[at:end])
-			at = end
-		}
-	}
-	return s
-}
-
-func (r *run) add(digits string) {
-	n := len(digits)
-	if r.most == 0 {
-		r.least, r.same = n, digits
-	}
-	r.least, r.most = min(r.least, n), max(r.most, n)
-	r.zeros = r.zeros || n == 2 && digits[0] == '0'
-	r.varies = r.varies || digits != r.same
-}
-
-func (r *run) is(n int) bool { return r.least == n && r.most == n }
-
-// short returns the field of one letter, or of two where all have two digits
-// and some, or others of the same date, a leading 0.
-func (r *run) short(letter string, padded bool) string {
-	if r.is(2) && (r.zeros || padded) {
-		return letter + letter
-	}
-	return letter
-}
-
-// padded reports whether dates are written with leading zeros. Those that begin
-// with a year of four digits always are.
-func (s *shape) padded() bool {
-	n := min(len(s.runs), 3)
-	return s.runs[0].is(4) || n == 3 && slices.ContainsFunc(s.runs[:n], func(r run) bool { return r.is(2) && r.zeros })
-}
-
 // forms returns the ways in which the shape may be a date, or a date and time.
 func (s *shape) forms() (out []form) {
 	for _, d := range s.dates() {
@@ -251,8 +152,9 @@ func (s *shape) finish(format string, used int) (f form, ok bool) {
 	default:
 		return f, false
 	}
-	literals := strings.Join(s.between, "")
-	return f, f.format != "" && (used > 0 || s.between[0] == "") && !strings.ContainsAny(literals, "YMDhms\"")
+	// No letter of a field, and nothing that cannot be typed, stands for itself.
+	odd := strings.ContainsFunc(strings.Join(s.between, ""), func(r rune) bool { return r < ' ' || r > '~' || strings.ContainsRune("YMDhms", r) })
+	return f, !odd && f.format != "" && (used > 0 || s.between[0] == "")
 }
 
 const utc = "+00:00"

@@ -29,32 +29,45 @@ func (t *table) flagOf(c *column, taken []*column) *column {
 		}
 		return true
 	}
-	// One with the column's own name and a word of flags goes before the next one.
+	units := slices.Concat(cWords, fWords, kWords)
+	own := without(c.words, units)
+	var near *column
 	for _, f := range t.columns {
 		if f == c || !f.has(flagWords...) || !good(f) {
 			continue
 		}
-		rest := slices.DeleteFunc(slices.Clone(f.words), func(w string) bool { return slices.Contains(flagWords, w) || w == "code" || w == "control" })
-		own := slices.DeleteFunc(slices.Clone(c.words), func(w string) bool {
-			return slices.Contains(cWords, w) || slices.Contains(fWords, w) || slices.Contains(kWords, w)
-		})
+		rest := without(f.words, append(slices.Clone(flagWords), "code", "control"))
 		if slices.Equal(rest, own) {
-			return f
+			return f // it has the column's own name
+		}
+		left := without(own, rest)
+		stated := slices.ContainsFunc(left, func(w string) bool {
+			return slices.Contains(maxWords, w) || slices.Contains(minWords, w) || slices.Contains(meanWords, w)
+		})
+		if near == nil && len(rest) > 0 && len(without(rest, own)) == 0 && !stated {
+			near = f // it has a part of it
 		}
 	}
-	if c.index+1 == len(t.columns) {
-		return nil
+	if c.index+1 < len(t.columns) {
+		switch next := t.columns[c.index+1]; {
+		case !good(next):
+		case next.has(flagWords...) && len(next.words) <= 3:
+			return next
+		case next.name == "" && next.filled > 0 && next.numeric == 0:
+			return next
+		}
 	}
-	next := t.columns[c.index+1]
-	switch {
-	case !good(next):
-		return nil
-	case next.has(flagWords...) && len(next.words) <= 3:
-		return next
-	case next.name == "" && next.filled > 0 && next.numeric == 0:
-		return next
+	return near
+}
+
+// without returns the words that are not among others.
+func without(words, others []string) (out []string) {
+	for _, w := range words {
+		if !slices.Contains(others, w) {
+			out = append(out, w)
+		}
 	}
-	return nil
+	return out
 }
 
 // beside counts a flag's cells beside values and beside none.

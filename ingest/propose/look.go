@@ -90,12 +90,19 @@ func Look(name string, samples [][]byte) (*Proposal, error) {
 	}
 	p.setTime(t, when, temps)
 	p.setStation(where)
+	if again := t.rows - when.distinct; len(where.ids) == 1 && float64(again) > mostAgain*float64(t.rows) {
+		p.note("%d of %d rows have the time of another: a later row replaces an earlier one, so see whether times have all their columns", again, t.rows)
+	}
 	p.setValues(t, when, where, temps)
 	if err := p.verify(text); err != nil {
 		return nil, fmt.Errorf("proposed layout: %w", err)
 	}
 	return p, nil
 }
+
+// mostAgain is the share of rows that may have the time of another without a
+// word (judgement, no source).
+const mostAgain = 0.05
 
 // defaultShare is what settings take for max_set_aside if it is left out.
 const defaultShare = 0.2

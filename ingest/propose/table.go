@@ -3,7 +3,6 @@ package propose
 import (
 	"errors"
 	"fmt"
-	"slices"
 	"strings"
 )
 
@@ -27,9 +26,8 @@ var delimiters = []struct {
 
 // Bounds of judgement; no source.
 const (
-	triedLines  = 400 // lines by which the delimiter is found
-	leastShare  = 0.5 // of lines that must have the same number of columns
-	headerShare = 0.2 // of cells that may look like data in a line of names
+	triedLines = 400 // lines by which the delimiter is found
+	leastShare = 0.5 // of lines that must have the same number of columns
 )
 
 // tabulate finds the delimiter, the names and the rows.
@@ -51,14 +49,22 @@ func tabulate(s *sample) (*table, error) {
 			at(s.lines[0].number), shown(s.lines[0].text))
 	}
 	rows := t.remarkedNames(remarks, lines[0], char, width)
+	var before []line // that are no rows, before the first
 	for _, l := range lines {
 		if cells, ok := split(l.text, char, nil); ok && len(cells) == width {
 			rows = append(rows, row{cells, l.number, false})
-		} else {
-			t.others = append(t.others, l.text)
+			continue
+		}
+		t.others = append(t.others, l.text)
+		if l.number > 0 && len(rows) == 0 {
+			before = append(before, l)
 		}
 	}
 	rows = t.takeNames(rows, width)
+	if t.namesLine == 0 && t.comment == "" && len(before) > 0 {
+		t.passOver(before[len(before)-1], lines)
+		t.shortNames(before[len(before)-1], char, rows)
+	}
 	if len(rows) == 0 {
 		return nil, errors.New("there are column names at most, and no rows with dates and numbers: a layout is found by what is in the rows, so take a file that has some")
 	}
@@ -74,20 +80,6 @@ type row struct {
 	cells  []string
 	number int  // of the line; 0 if it is not known
 	remark bool // it is a comment
-}
-
-// remarkedNames returns the comments before the first line that may hold names.
-func (t *table) remarkedNames(remarks []line, first line, char byte, width int) (out []row) {
-	for _, r := range remarks {
-		if r.number == 0 || first.number > 0 && r.number > first.number {
-			break
-		}
-		cells, ok := split(strings.TrimLeft(r.text, t.comment+" "), char, nil)
-		if ok && len(cells) == width && !slices.ContainsFunc(cells, isData) {
-			out = append(out, row{cells, r.number, true})
-		}
-	}
-	return out
 }
 
 // findComment takes for a comment mark what no row of readings begins with.
@@ -124,7 +116,7 @@ func (t *table) findDelimiter(lines []line) (char byte, width int) {
 			}
 			widths[len(cells)]++
 			for _, cell := range cells {
-				if cell == "" || isNumber(cell) || isDateLike(cell) || d.char != ',' && hasDecimalComma(cell) {
+				if cell == "" || standsForNothing(cell) || isNumber(cell) || isDateLike(cell) || d.char != ',' && hasDecimalComma(cell) {
 					good[len(cells)]++
 				}
 			}
@@ -136,112 +128,13 @@ func (t *table) findDelimiter(lines []line) (char byte, width int) {
 			}
 			// Columns of text say nothing for or against a delimiter.
 			score := share * (0.1 + float64(good[w])/float64(n*w))
+			if d.char == 0 {
+				score *= 0.9 // a blank may stand between a date and its time
+			}
 			if score > best+1e-9 || score > best-1e-9 && d.name == t.delimiter && w > width {
 				best, t.delimiter, char, width = score, d.name, d.char, w
 			}
 		}
 	}
 	return char, width
-}
-
-// takeNames sets the columns, with their names, and returns the rows.
-func (t *table) takeNames(rows []row, width int) []row {
-	namesLike := t.namesLike(rows, width)
-	first := slices.IndexFunc(rows, func(r row) bool { return !namesLike(r) })
-	if first < 0 {
-		first = len(rows)
-	}
-	var names []string
-	var units [][]string
-	for _, r := range rows[:first] {
-		if r.number == 0 || r.number > maxNamesLine {
-			break
-		}
-		if names == nil || filled(r.cells) > filled(names) && filled(names)*2 < width {
-			if names != nil {
-				units = append(units, names)
-			}
-			names, t.byNumber = r.cells, r.remark
-		} else {
-			units = append(units, r.cells)
-			t.byNumber = t.byNumber || !r.remark
-		}
-		if !r.remark {
-			t.namesLine = r.number
-		}
-	}
-	for i := range width {
-		c := &column{index: i}
-		if names != nil {
-			c.setName(names[i])
-			c.callable = !t.byNumber && callable(names[i]) && count(names, names[i]) == 1
-			for _, u := range units {
-				c.unit += " " + u[i]
-			}
-		}
-		t.columns = append(t.columns, c)
-	}
-	rows = rows[first:]
-	kept := slices.DeleteFunc(rows, namesLike)
-	if n := len(rows) - len(kept); n > 0 && names != nil {
-		t.notes = append(t.notes, fmt.Sprintf("%d lines further on look like names again; they will be set aside", n))
-	}
-	if t.byNumber && t.namesLine > 0 {
-		t.notes = append(t.notes, fmt.Sprintf("there are several lines of names and units, down to line %d: columns are called by number, so that none of these lines counts as a row", t.namesLine))
-	}
-	return kept
-}
-
-// maxNamesLine is the highest names_line that settings take.
-const maxNamesLine = 1000
-
-// namesLike returns what tells names, and units, from rows: text where the other
-// lines have data.
-func (t *table) namesLike(rows []row, width int) func(row) bool {
-	typed := make([]bool, width)
-	for i := range typed {
-		data, text := 0, 0
-		for _, r := range rows {
-			if isData(r.cells[i]) {
-				data++
-			} else if r.cells[i] != "" {
-				text++
-			}
-		}
-		typed[i] = data > 0 && data*3 >= text
-	}
-	if !slices.Contains(typed, true) { // there are no rows but, it may be, names
-		return func(row) bool { return true }
-	}
-	return func(r row) bool {
-		data, text := 0, 0
-		for i, cell := range r.cells {
-			switch {
-			case !typed[i] || cell == "":
-			case isData(cell):
-				data++
-			default:
-				text++
-			}
-		}
-		return text > 0 && float64(data) <= headerShare*float64(data+text)
-	}
-}
-
-func count(list []string, text string) (n int) {
-	for _, s := range list {
-		if s == text {
-			n++
-		}
-	}
-	return n
-}
-
-func filled(cells []string) (n int) {
-	for _, c := range cells {
-		if c != "" {
-			n++
-		}
-	}
-	return n
 }

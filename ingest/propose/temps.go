@@ -3,7 +3,6 @@ package propose
 import (
 	"errors"
 	"fmt"
-	"math"
 	"slices"
 
 	"thawledger/pipeline"
@@ -39,6 +38,7 @@ const (
 	leastOver     = 0.98 // of rows in which a max is at least the min
 	leastSpread   = 0.5  // of temperatures, in any unit
 	mostDegrees   = 150.0
+	leastTogether = 0.6 // correlation of temperatures of one place
 	subDaily      = 20 * 3600
 	leastDistinct = 5
 )
@@ -57,6 +57,10 @@ func (t *table) findTemperatures(when *timing, where *place) (*temps, error) {
 		if how := c.temperature(); how > 0 {
 			by[how] = append(by[how], c)
 		}
+	}
+	if c := t.kinds(); c != nil {
+		return nil, fmt.Errorf("column %s says of each row what its value is (%s), so that max and min stand in one column, which no layout reads: give each a column of its own",
+			c.called(), listed(sortedKeys(c.distinct)))
 	}
 	f := &temps{}
 	for how := byTemperature; how <= byValues && len(f.values) == 0; how++ {
@@ -79,6 +83,27 @@ func (t *table) findTemperatures(when *timing, where *place) (*temps, error) {
 		}
 	}
 	return nil, errors.New(text)
+}
+
+// kinds returns the column that names several variables by turns; nil if there
+// is none.
+func (t *table) kinds() *column {
+	for _, c := range t.columns {
+		n := 0
+		for text := range c.texts {
+			words := wordsOf(text)
+			has := func(list []string) bool {
+				return slices.ContainsFunc(words, func(w string) bool { return slices.Contains(list, w) })
+			}
+			if has(tempWords) && (has(maxWords) || has(minWords) || has(meanWords)) {
+				n++
+			}
+		}
+		if n > 1 && c.numeric == 0 {
+			return c
+		}
+	}
+	return nil
 }
 
 func commaCells(c *column) (n int) {
@@ -130,16 +155,6 @@ func noValues(c *column) (n int) {
 func (c *column) likeDegrees() bool {
 	lo, hi, ok := c.bounds()
 	return ok && lo >= -mostDegrees && hi <= mostDegrees && hi-lo >= leastSpread && len(c.distinct) >= min(leastDistinct, c.numeric)
-}
-
-// likeliest keeps the columns with frost, if any has: no humidity, rain or wind
-// is below 0.
-func likeliest(all []*column) []*column {
-	frost := slices.DeleteFunc(slices.Clone(all), func(c *column) bool { lo, _, _ := c.bounds(); return lo >= 0 })
-	if len(frost) > 0 {
-		return frost
-	}
-	return all
 }
 
 // choose picks what is proposed: of days the max and min, or else the mean; of
@@ -217,35 +232,6 @@ func (f *temps) choose(all []*column, when *timing) {
 			f.others = append(f.others, temp{c, v})
 		}
 	}
-}
-
-// pair returns the first two columns of which one is never below the other, and
-// mostly above: a max and its min.
-func pair(all []*column) (over, under *column) {
-	for i, a := range all {
-		for _, b := range all[i+1 : min(len(all), i+4)] {
-			n, above, below := 0, 0, 0
-			for k, v := range a.values {
-				switch w := b.values[k]; {
-				case math.IsNaN(v) || math.IsNaN(w):
-					continue
-				case v > w:
-					above++
-				case v < w:
-					below++
-				}
-				n++
-			}
-			switch least := int(math.Ceil(leastOver * float64(n))); {
-			case n < leastDistinct:
-			case n-below >= least && above*2 > n:
-				return a, b
-			case n-above >= least && below*2 > n:
-				return b, a
-			}
-		}
-	}
-	return nil, nil
 }
 
 func listedColumns(columns []*column) string {

@@ -5,6 +5,7 @@ import (
 	"errors"
 	"fmt"
 	"math"
+	"regexp"
 	"slices"
 
 	"thawledger/ingest/normal"
@@ -40,15 +41,15 @@ const (
 	tried               = 48   // rows by which most ways are dropped
 	mostWays            = 24   // that all rows are held against
 	named               = 0.2  // for a name that says that there is a time
-	laterBy             = 0.1  // against an order that hardly anybody writes
 	many                = 60   // rows from which regular steps prove something
 )
 
 // findTime returns the best way to read the rows' times.
 func (t *table) findTime() (*timing, error) {
 	single := t.singleColumns()
+	// Of ways that are as good the finer one is taken, so it comes first.
 	var good []*timing
-	for _, w := range slices.Concat(single, t.withClocks(single), t.fromFields()) {
+	for _, w := range slices.Concat(t.withClocks(single), single, t.fromFields()) {
 		if len(good) < mostWays && w.try(t.rows) {
 			good = append(good, w)
 		}
@@ -177,9 +178,6 @@ func (w *timing) weigh() bool {
 		w.onward = float64(up) / float64(pairs)
 	}
 	w.score = w.read + w.onward/2 + w.regular/2
-	if w.order == "YDM" {
-		w.score -= laterBy
-	}
 	if slices.ContainsFunc(w.columns, func(c *column) bool { return c.has("date", "time", "datetime", "timestamp", "day", "year", "doy") }) {
 		w.score += named
 	}
@@ -205,9 +203,25 @@ func floorDiv(a, b int64) int64 {
 	return q
 }
 
+var offsetAtEnd = regexp.MustCompile(`^[0-9]+[-/.].*[0-9]:[0-9]{2}.*([+-][0-9]{2}:?[0-9]{2})$`)
+
+// offsetsOf returns the offsets that times end with.
+func offsetsOf(cells []string) []string {
+	ends := map[string]int{}
+	for _, cell := range cells {
+		if m := offsetAtEnd.FindStringSubmatch(cell); m != nil && len(cell) <= 40 {
+			ends[m[1]]++
+		}
+	}
+	return sortedKeys(ends)
+}
+
 // noTime says why there is no time to be found.
 func (t *table) noTime() error {
 	for _, c := range t.columns {
+		if ends := offsetsOf(c.cells); len(ends) > 1 {
+			return fmt.Errorf("column %s holds times with several offsets from UTC (%s), which no layout reads: write them all with one", c.called(), listed(ends))
+		}
 		odd := map[string]int{}
 		for _, cell := range c.cells {
 			if why := unreadable(cell); why != "" {

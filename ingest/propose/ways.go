@@ -1,6 +1,9 @@
 package propose
 
-import "slices"
+import (
+	"math"
+	"slices"
+)
 
 // singleColumns returns the ways to read times from one column.
 func (t *table) singleColumns() (out []*timing) {
@@ -32,7 +35,7 @@ func (t *table) withClocks(dates []*timing) (out []*timing) {
 			if !ok || !hasHour(f.format) {
 				continue
 			}
-			if c.shape.between[0] == "" && len(c.shape.runs) == 1 && !next && !c.has("hour", "hr", "hh", "time", "utc") {
+			if c.isRun() && !(next && c.name == "") && !c.has("hour", "hr", "hh", "time", "utc") {
 				continue // any small whole number would do
 			}
 			zone := d.zone
@@ -61,7 +64,7 @@ func (t *table) fromFields() (out []*timing) {
 			}
 			return nil
 		}
-		month, day := t.called("month", "mo", "mon"), t.called("day", "dd", "dom")
+		month, day := t.called("month", "mo", "mon"), t.called("day", "dy", "dd", "dom")
 		ofYear := t.called("doy", "jday", "julian", "yday")
 		if day == nil && ofYear == nil && month == nil {
 			month, day, ofYear = near(1), near(2), near(1)
@@ -72,9 +75,31 @@ func (t *table) fromFields() (out []*timing) {
 			ofYear = day
 		}
 		out = append(out, t.fields("YMD", field{c, year}, field{month, "M"}, field{day, "D"})...)
-		out = append(out, t.fields("YD", field{c, year}, field{ofYear, "DDD"})...)
+		for _, w := range t.fields("YD", field{c, year}, field{ofYear, "DDD"}) {
+			if month == nil || month == ofYear || w.suits(month) {
+				out = append(out, w)
+			}
+		}
 	}
 	return out
+}
+
+// suits reports whether the months of most rows are those of a column, if it
+// holds months at all.
+func (w *timing) suits(month *column) bool {
+	if !month.isOf(1, 12) || !w.try(len(month.values)) {
+		return true
+	}
+	n, same := 0, 0
+	for row, v := range month.values {
+		if d, ok := w.day(row); ok && !math.IsNaN(v) {
+			_, m, _ := d.Date()
+			if n++; int(m) == int(v) {
+				same++
+			}
+		}
+	}
+	return same*10 >= n*9
 }
 
 // called returns the column for which a date's field is the name.
@@ -125,7 +150,7 @@ func (t *table) fields(order string, list ...field) []*timing {
 		}
 		w.add(f.column, name)
 	}
-	out := []*timing{w}
+	out := []*timing{w} // the finest first
 	hour := t.named("hour", "hr", "hh", "time")
 	if last := w.columns[len(w.columns)-1].index; hour == nil && last+1 < len(t.columns) && t.columns[last+1].name == "" {
 		hour = t.columns[last+1]
@@ -139,11 +164,15 @@ func (t *table) fields(order string, list ...field) []*timing {
 	}
 	timed := &timing{form: form{format: w.format, zone: f.zone, order: order}, columns: slices.Clone(w.columns)}
 	timed.add(hour, f.format)
-	out = append(out, timed)
-	if minute := t.named("minute", "minutes"); minute != nil && minute.isRun() && len(f.format) <= 2 && minute.shape.runs[0].is(2) {
+	out = slices.Insert(out, 0, timed)
+	minute := t.named("minute", "minutes")
+	if next := hour.index + 1; minute == nil && next < len(t.columns) && t.columns[next].has("min", "mn", "mi") && t.columns[next].isOf(0, 59) {
+		minute = t.columns[next]
+	}
+	if minute != nil && minute.isRun() && len(f.format) <= 2 && minute.shape.runs[0].is(2) {
 		finer := &timing{form: timed.form, columns: slices.Clone(timed.columns)}
 		finer.add(minute, "mm")
-		out = append(out, finer)
+		out = slices.Insert(out, 0, finer)
 	}
 	return out
 }

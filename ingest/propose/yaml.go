@@ -195,25 +195,9 @@ func plain(text string) string {
 	return quoted(text)
 }
 
-// quoted writes a text in double quotes as YAML has them.
+// quoted writes a text in double quotes. Whatever a proposal holds can be printed.
 func quoted(text string) string {
-	var b strings.Builder
-	b.WriteByte('"')
-	for _, r := range text {
-		switch {
-		case r == '"' || r == '\\':
-			b.WriteByte('\\')
-			b.WriteRune(r)
-		case r < 0x10000 && !unicode.IsPrint(r):
-			fmt.Fprintf(&b, `\u%04x`, r)
-		case !unicode.IsPrint(r):
-			fmt.Fprintf(&b, `\U%08x`, r)
-		default:
-			b.WriteRune(r)
-		}
-	}
-	b.WriteByte('"')
-	return b.String()
+	return `"` + strings.NewReplacer(`\`, `\\`, `"`, `\"`).Replace(text) + `"`
 }
 
 func list(texts []string, write func(string) string) string {
