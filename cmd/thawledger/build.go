@@ -173,6 +173,9 @@ func (d *daemon) stages(only []string) []lifecycle.Stage {
 			out = append(out, s)
 		}
 	}
+	if d.set.Listen.Address != "" && wanted(only, "ingest") && !d.ingest.DeliveriesOnly {
+		out = append([]lifecycle.Stage{{Name: "push", Run: func(intake, _ context.Context) error { return d.takePushed(intake) }}}, out...)
+	}
 	return out
 }
 
