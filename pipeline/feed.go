@@ -26,33 +26,73 @@ type Feed struct {
 }
 
 // Layout says how rows become readings. A column is named as the header has it,
-// or by its number from 1.
+// or by its number from 1. Where a column may have other names (Or), the file
+// must have exactly one of them.
+//
+// The header of a file is its preamble (PreambleEnds) and what comes before its
+// data: the lines of names and units, and all lines up to DataLine. NamesLine,
+// UnitsLine and DataLine are counted from 1, after the preamble.
 type Layout struct {
-	Name      string        `json:"name"`
-	Encoding  string        `json:"encoding,omitempty"` // as package unpack names it; "" for utf-8
-	Delimiter string        `json:"delimiter"`          // one character, or "space" for any run of white space
-	Comment   string        `json:"comment"`            // lines that begin so are comments; "" for none
-	NamesLine int           `json:"names_line"`         // line that holds the column names, from 1; 0 for none
-	Time      TimeColumns   `json:"time"`
-	Station   StationColumn `json:"station"`
-	Values    []ValueColumn `json:"values"`
+	Name      string `json:"name"`
+	Encoding  string `json:"encoding,omitempty"` // as package unpack names it; "" for utf-8
+	Delimiter string `json:"delimiter"`          // one character, or "space" for any run of white space; "" with Widths
+	// Widths says how many characters each column is wide, for columns that no
+	// delimiter parts. The last takes all that is left of a line.
+	Widths       []int         `json:"widths,omitempty"`
+	Quote        string        `json:"quote,omitempty"`         // "none" for quotes that are text as any other; "" as RFC 4180 has them
+	Decimal      string        `json:"decimal,omitempty"`       // "," for a decimal comma; "" for a point
+	Comment      string        `json:"comment"`                 // lines that begin so are comments; "" for none
+	PreambleEnds string        `json:"preamble_ends,omitempty"` // regular expression that fits the last line of the preamble first; "" for none
+	NamesLine    int           `json:"names_line"`              // line that holds the column names; 0 for none
+	UnitsLine    int           `json:"units_line,omitempty"`    // line that holds the columns' units; 0 for none
+	DataLine     int           `json:"data_line,omitempty"`     // first line of data; 0 for that after names and units
+	Time         TimeColumns   `json:"time"`
+	Station      StationColumn `json:"station"`
+	Values       []ValueColumn `json:"values"`
 	// MaxSetAside is the share (0 to 1) of data rows that may be set aside
 	// before the whole batch is held back as read by the wrong layout.
 	MaxSetAside float64 `json:"max_set_aside"`
 }
 
 // TimeColumns says how a row's time is read: the cells of Columns, joined by
-// one space, are read by Format, whose fields are YYYY YY MM M DD D DDD (day of
-// the year) hh h mm ss; other characters stand for themselves.
+// one space, are read by Format, whose fields are YYYY YY MMM (name of the month)
+// MM M DD D DDD (day of the year) hh h hmm (1 to 4 digits) mm ss .f (fraction of
+// the second, which must be 0) AM (or PM); other characters stand for
+// themselves. The formats epoch and epoch_ms are seconds and milliseconds since
+// 1970-01-01T00:00:00Z.
 type TimeColumns struct {
-	Columns []string `json:"columns"`
-	Format  string   `json:"format"`
-	// Zone is "station" for the station's standard time, or a fixed offset
-	// such as "Z", "+03:00" or "-09:00".
-	Zone   string `json:"zone"`
-	Covers Covers `json:"covers"`
-	SpanS  int32  `json:"span_s"` // of ending and beginning; 86400 for day, 0 for instant
+	Columns []string   `json:"columns"`
+	Or      [][]string `json:"or,omitempty"` // other names of each of Columns; empty if none has any
+	Format  string     `json:"format"`
+	// Zone is "station" for the station's standard time, a fixed offset such as
+	// "Z", "+03:00" or "-09:00", or a named zone such as "America/Edmonton".
+	Zone string `json:"zone"`
+	// Ambiguous and Skipped say what is done with times that the clocks of a named
+	// zone show twice, and with those that they do not show at all.
+	Ambiguous Ambiguous `json:"ambiguous,omitempty"`
+	Skipped   Skipped   `json:"skipped,omitempty"`
+	Covers    Covers    `json:"covers"`
+	SpanS     int32     `json:"span_s"` // of ending and beginning; 86400 for day, 0 for instant
 }
+
+// Ambiguous says which of two instants a time is that clocks show twice.
+type Ambiguous string
+
+// What is done with a time that clocks show twice.
+const (
+	AmbiguousEarlier  Ambiguous = "earlier"
+	AmbiguousLater    Ambiguous = "later"
+	AmbiguousSetAside Ambiguous = "set_aside"
+)
+
+// Skipped says what is done with a time that clocks leave out.
+type Skipped string
+
+// What is done with a time that clocks leave out.
+const (
+	SkippedShift    Skipped = "shift" // it is read as if the clocks had not yet been put forward
+	SkippedSetAside Skipped = "set_aside"
+)
 
 // Covers says what span a row's time stands for.
 type Covers string
@@ -66,10 +106,13 @@ const (
 )
 
 // StationColumn says which station a row is of: a column, a part of the file's
-// name, or the same for all. Exactly one of Column, FileName and Constant is set.
+// name or of its header, or the same for all. Exactly one of Column, FileName,
+// Preamble and Constant is set.
 type StationColumn struct {
 	Column   string            `json:"column,omitempty"`
+	Or       []string          `json:"or,omitempty"`        // other names of Column
 	FileName string            `json:"file_name,omitempty"` // regular expression; its first group is the id
+	Preamble string            `json:"preamble,omitempty"`  // the same, for the first line before the names that it fits
 	Constant string            `json:"constant,omitempty"`
 	Map      map[string]string `json:"map,omitempty"` // the feed's id to ours; an id that is not in it stands for itself
 	// Clocks holds what the days and times of each of the feed's stations
@@ -86,19 +129,29 @@ type StationClock struct {
 
 // ValueColumn says how one column's cells become readings.
 type ValueColumn struct {
-	Column   string      `json:"column"`
-	Variable string      `json:"variable"`
-	Unit     TempUnit    `json:"unit"`
-	Sensor   string      `json:"sensor"`
-	LevelM   float64     `json:"level_m"`
-	Missing  []string    `json:"missing"` // cells that say that there is no value; an empty cell always does
-	Flag     *FlagColumn `json:"flag,omitempty"`
+	Column string   `json:"column"`
+	Or     []string `json:"or,omitempty"` // other names of Column
+	// When says which rows this is of: those that have one of the texts in each of
+	// the columns that are its keys. Without it it is of all rows.
+	When     map[string][]string `json:"when,omitempty"`
+	Variable string              `json:"variable"`
+	Unit     TempUnit            `json:"unit"`
+	// UnitText is what the line of units must have for the column; "" for anything.
+	UnitText string `json:"unit_text,omitempty"`
+	// The value in Unit is cell times Scale plus Offset; a Scale of 0 stands for 1.
+	Scale   float64     `json:"scale,omitempty"`
+	Offset  float64     `json:"offset,omitempty"`
+	Sensor  string      `json:"sensor"`
+	LevelM  float64     `json:"level_m"`
+	Missing []string    `json:"missing"` // cells that say that there is no value; an empty cell always does
+	Flag    *FlagColumn `json:"flag,omitempty"`
 }
 
 // FlagColumn gives a value its quality mark. A flag that Marks does not name
 // sets the cell aside; an empty flag gives Empty.
 type FlagColumn struct {
 	Column string             `json:"column"`
+	Or     []string           `json:"or,omitempty"` // other names of Column
 	Empty  Quality            `json:"empty"`
 	Marks  map[string]Quality `json:"marks"` // QualityMissing: the cell has no value whatever it shows
 }
