@@ -142,7 +142,7 @@ func TestReplacedDesignValue(t *testing.T) {
 	same(t, "exceedances", w.Rows(t, sql), []string{
 		`(100,2030-01-15,110,"design value replaced",2031-01-14)`, `(100,2031-01-15,120,"design value replaced",2031-06-20)`,
 		`(115,2030-01-15,110,"season over",2031-01-14)`, "(115,2031-01-15,120,,)"})
-	same(t, "told", w.heard(), []string{"apron -> exceeded, first judgement"})
+	same(t, "told", w.heard(), nil) // it stands as it stood
 	before := w.everything(t)
 	w.state(t, strip(surface("apron", thaw(115)))) // the same once more
 	same(t, "lines in changes", w.Rows(t, `select * from thaw.changes`), nil)
@@ -151,6 +151,21 @@ func TestReplacedDesignValue(t *testing.T) {
 }
 
 // Sites that the settings name no longer are judged no more.
+// Who was told that a surface is exceeded hears that by a higher value it is not.
+func TestReplacedDesignValueIsTold(t *testing.T) {
+	w := newWorld(t, "2031-08-01")
+	w.state(t, strip(surface("apron", thaw(100))))
+	w.set(t, "FELL", pipeline.Thaw, "2031-01-15", false, at("2031-06-20", 120))
+	w.pass(t)
+	w.heard()
+	w.state(t, strip(surface("apron", thaw(500))))
+	w.pass(t)
+	same(t, "told", w.heard(), []string{"apron exceeded -> within, design value replaced"})
+	w.state(t, strip(surface("apron", thaw(125))))
+	w.pass(t)
+	same(t, "told", w.heard(), []string{"apron within -> near, design value replaced"})
+}
+
 func TestDesignValueTakenOut(t *testing.T) {
 	w := newWorld(t, "2031-08-01")
 	pad := pipeline.Site{ID: "pad", Station: "FELL", Surfaces: []pipeline.Surface{surface("berm", thaw(100))}}

@@ -14,7 +14,8 @@ import (
 // may have touched, in one transaction.
 func (s *Service) judgeStation(ctx context.Context, station string) error {
 	err := s.DB.JudgeStation(ctx, station, func(j *store.Judging, from pipeline.Day) error {
-		if err := j.ClearRetired(ctx); err != nil {
+		retired, err := j.ClearRetired(ctx)
+		if err != nil {
 			return err
 		}
 		designs, err := j.Designs(ctx)
@@ -22,7 +23,7 @@ func (s *Service) judgeStation(ctx context.Context, station string) error {
 			return err
 		}
 		for _, kind := range []pipeline.Kind{pipeline.Thaw, pipeline.Freeze} {
-			if err := s.judgeKind(ctx, j, designs, kind, from); err != nil {
+			if err := s.judgeKind(ctx, j, designs, retired, kind, from); err != nil {
 				return err
 			}
 		}
@@ -34,7 +35,7 @@ func (s *Service) judgeStation(ctx context.Context, station string) error {
 	return nil
 }
 
-func (s *Service) judgeKind(ctx context.Context, j *store.Judging, designs []store.Design, kind pipeline.Kind, from pipeline.Day) error {
+func (s *Service) judgeKind(ctx context.Context, j *store.Judging, designs []store.Design, retired map[store.Retired]pipeline.State, kind pipeline.Kind, from pipeline.Day) error {
 	seasons, err := j.Seasons(ctx, kind, from)
 	if err != nil {
 		return err
@@ -67,7 +68,7 @@ func (s *Service) judgeKind(ctx context.Context, j *store.Judging, designs []sto
 			if !ok || len(bySeason[season.Start]) == 0 {
 				continue
 			}
-			if err := s.judgeSeason(ctx, j, d, n, season, bySeason[season.Start]); err != nil {
+			if err := s.judgeSeason(ctx, j, d, n, retired, season, bySeason[season.Start]); err != nil {
 				return err
 			}
 			judged = append(judged, season.Start)
@@ -104,7 +105,7 @@ func applies(d *store.Design, all []store.Design, season pipeline.Day) (n *float
 }
 
 // judgeSeason judges one surface in one season and keeps what came of it.
-func (s *Service) judgeSeason(ctx context.Context, j *store.Judging, d *store.Design, n *float64, season store.SeasonState, days []store.IndexDay) error {
+func (s *Service) judgeSeason(ctx context.Context, j *store.Judging, d *store.Design, n *float64, retired map[store.Retired]pipeline.State, season store.SeasonState, days []store.IndexDay) error {
 	factor := 1.0
 	if n != nil {
 		factor = *n
@@ -144,11 +145,20 @@ func (s *Service) judgeSeason(ctx context.Context, j *store.Judging, d *store.De
 		change.From = before.State
 		past = &judge.Past{State: before.State, Straddles: before.Straddles}
 	}
+	replaced := false
+	if before == nil {
+		// What was told by a design value that is no longer in force is put right.
+		change.From, replaced = retired[store.Retired{Site: d.Site, Surface: d.Surface, Kind: d.Kind, Definition: d.Definition, Of: d.Of,
+			Direction: d.Direction, Season: season.Start}]
+	}
 	if change.From == row.State {
 		return nil
 	}
 	change.Why = judge.Why(past, v, before != nil && season.Through > before.Day)
-	change.Announce = judge.Told(d.Direction, change.From, row.State) && s.open(d, season, past != nil)
+	if replaced {
+		change.Why = judge.Replaced
+	}
+	change.Announce = judge.Told(d.Direction, change.From, row.State) && s.open(d, season, past != nil || replaced)
 	return j.AddStandingChange(ctx, row, change)
 }
 

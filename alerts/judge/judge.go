@@ -100,6 +100,10 @@ func Told(direction pipeline.Direction, before, after pipeline.State) bool {
 	return before != "" || after != pipeline.Within
 }
 
+// Replaced is why a state changes when another design value takes the place of
+// the one that it was judged by.
+const Replaced = "design value replaced"
+
 // Why says in a word what brought a change of state about: before is nil for
 // the first judgement of a season, progressed says that the season has gone on
 // since. A level that falls, or that changes while the season has not gone on,

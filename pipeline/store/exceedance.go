@@ -60,19 +60,45 @@ func (j *Judging) WithdrawExceedance(ctx context.Context, id int64, day pipeline
 	return nil
 }
 
+// Retired is how a surface stood in a season by a design value that another has
+// taken the place of.
+type Retired struct {
+	Site, Surface string
+	Kind          pipeline.Kind
+	Definition    pipeline.Definition
+	Of            pipeline.Of
+	Direction     pipeline.Direction
+	Season        pipeline.Day
+}
+
 // ClearRetired drops the standings of retired design values of the station's
-// sites and closes their exceedances: they are judged no more.
-func (j *Judging) ClearRetired(ctx context.Context) error {
-	_, err := j.tx.Exec(ctx, `with gone as (
+// sites and closes their exceedances: they are judged no more. It returns the
+// states that they had.
+func (j *Judging) ClearRetired(ctx context.Context) (map[Retired]pipeline.State, error) {
+	rows, err := j.tx.Query(ctx, `with gone as (
 			select design_value_id from thaw.design_values join thaw.sites using (site)
 			where station = $1 and retired_at is not null),
-		s as (delete from thaw.standings where design_value_id in (select * from gone))
-		update thaw.exceedances set closed_on = through_day, closed_as = 'design value replaced', closed_at = clock_timestamp()
-		where design_value_id in (select * from gone) and (closed_as is null or closed_as = 'season over')`, j.station)
+		s as (delete from thaw.standings where design_value_id in (select * from gone) returning design_value_id, season_start, state),
+		e as (update thaw.exceedances set closed_on = through_day, closed_as = 'design value replaced', closed_at = clock_timestamp()
+			where design_value_id in (select * from gone) and (closed_as is null or closed_as = 'season over'))
+		select d.site, d.surface, d.kind, d.definition, d.index_of, d.direction, s.season_start, s.state
+		from s join thaw.design_values d using (design_value_id) order by d.design_value_id`, j.station)
 	if err != nil {
-		return fmt.Errorf("clear retired design values of %s: %w", j.station, err)
+		return nil, fmt.Errorf("clear retired design values of %s: %w", j.station, err)
 	}
-	return nil
+	out := map[Retired]pipeline.State{}
+	var r Retired
+	var season time.Time
+	var state pipeline.State
+	_, err = pgx.ForEachRow(rows, []any{&r.Site, &r.Surface, &r.Kind, &r.Definition, &r.Of, &r.Direction, &season, &state}, func() error {
+		r.Season = dayOf(season)
+		out[r] = state
+		return nil
+	})
+	if err != nil {
+		return nil, fmt.Errorf("clear retired design values of %s: %w", j.station, err)
+	}
+	return out, nil
 }
 
 // DropStandings removes the standings of a design value for seasons that it is
