@@ -34,7 +34,10 @@ type Service struct {
 // fails later is logged and tried again.
 func (s *Service) Run(ctx context.Context) error {
 	nudges, err := s.Bus.Nudges(ctx)
-	if err != nil {
+	switch {
+	case ctx.Err() != nil:
+		return nil // over before it began
+	case err != nil:
 		return err
 	}
 	poll := s.Poll

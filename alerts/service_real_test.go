@@ -205,6 +205,11 @@ func TestRunCannotBegin(t *testing.T) {
 	if err := w.service.Run(t.Context()); !errors.Is(err, errDeaf) {
 		t.Errorf("run: %v", err)
 	}
+	over, stop := context.WithCancel(t.Context())
+	stop()
+	if err := w.service.Run(over); err != nil {
+		t.Errorf("run that is over before it begins: %v", err)
+	}
 }
 
 var errDeaf = errors.New("cannot listen")
