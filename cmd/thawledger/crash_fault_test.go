@@ -28,8 +28,9 @@ const crashes = 24
 // an undisturbed run leaves it (invariants 2 and 3).
 func TestKilledDuringLoad(t *testing.T) {
 	if testing.Short() {
-		t.Skip("takes half a minute")
+		t.Skip("takes a minute")
 	}
+	t.Parallel()
 	seed := uint64(time.Now().UnixNano())
 	t.Logf("seed %d", seed)
 	random := rand.New(rand.NewPCG(seed, 1))

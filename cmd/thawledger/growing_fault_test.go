@@ -47,6 +47,7 @@ func TestGrowingFileKilled(t *testing.T) {
 	if testing.Short() {
 		t.Skip("takes a minute")
 	}
+	t.Parallel()
 	settings := fmt.Sprintf(strings.Replace(hourlySettings, "settle: 0s,", `settle: 0s, every: "@every 1s",`, 1), "Z", ", grows: true")
 	rows := growing(appendsMade)
 	whole := newPlace(t, settings, map[string]string{"feed/log.csv": "time,t\n" + strings.Join(rows, "")})
