@@ -5,7 +5,9 @@ import (
 	"encoding/csv"
 	"fmt"
 	"io"
+	"regexp"
 	"strconv"
+	"strings"
 	"testing"
 	"time"
 
@@ -25,11 +27,12 @@ func hours() []byte {
 	return b.Bytes()
 }
 
-func hoursPlan(t testing.TB) *csvfeed.Plan {
+func hoursPlan(t testing.TB, change func(*pipeline.Layout)) *csvfeed.Plan {
 	t.Helper()
 	l := hourly()
 	l.Station = pipeline.StationColumn{Column: "id", Map: map[string]string{"N1": "north"}, Clocks: l.Station.Clocks}
 	l.Values[0].Flag = &pipeline.FlagColumn{Column: "flag", Marks: map[string]pipeline.Quality{"M": pipeline.QualityMissing}}
+	change(l)
 	plan, err := csvfeed.Compile(l)
 	if err != nil {
 		t.Fatal(err)
@@ -85,7 +88,7 @@ func bare(text []byte) (*adder, error) {
 
 func TestDecodeAgreesWithBareLoop(t *testing.T) {
 	text, got := hours(), &adder{}
-	if _, err := hoursPlan(t).Decode(t.Context(), bytes.NewReader(text), "", got); err != nil {
+	if _, err := hoursPlan(t, func(*pipeline.Layout) {}).Decode(t.Context(), bytes.NewReader(text), "", got); err != nil {
 		t.Fatal(err)
 	}
 	want, err := bare(text)
@@ -99,22 +102,54 @@ func TestDecodeAgreesWithBareLoop(t *testing.T) {
 
 // TestDecodeAllocatesNothingByTheRow: what is allocated does not grow with rows.
 func TestDecodeAllocatesNothingByTheRow(t *testing.T) {
-	text, plan := hours(), hoursPlan(t)
-	short := text[:bytes.LastIndexByte(text[:len(text)/10], '\n')+1]
-	allocations := func(text []byte) float64 {
-		return testing.AllocsPerRun(5, func() {
-			if _, err := plan.Decode(t.Context(), bytes.NewReader(text), "", &adder{}); err != nil {
-				t.Fatal(err)
+	tests := []struct {
+		name   string
+		layout func(*pipeline.Layout)
+	}{
+		{"one row, one value", func(*pipeline.Layout) {}},
+		{"named zone, scaled", func(l *pipeline.Layout) {
+			l.Time.Zone, l.Time.Ambiguous, l.Time.Skipped = "America/Edmonton", pipeline.AmbiguousEarlier, pipeline.SkippedShift
+			l.Values[0].Scale, l.Values[0].Offset = 1.5, -1
+		}},
+		{"values of some rows", func(l *pipeline.Layout) {
+			l.Values[0].When = map[string][]string{"humidity": {"50", "51"}}
+			l.Values = append(l.Values, l.Values[0])
+			l.Values[1].When = map[string][]string{"humidity": {"52"}, "id": {"N1"}}
+		}},
+		{"widths, not as CSV", func(l *pipeline.Layout) {
+			l.Delimiter, l.Widths, l.NamesLine, l.Time.Columns, l.Values[0].Column = "", []int{3, 17, 5, 2}, 0, []string{"2"}, "3"
+			l.Station.Column, l.Values[0].Flag.Column = "1", "4"
+		}},
+	}
+	columns := regexp.MustCompile(`(?m)^N1,([^,]*),([^,]*),.*`).ReplaceAllFunc(hours()[bytes.IndexByte(hours(), '\n')+1:], func(line []byte) []byte {
+		cells := bytes.Split(line, []byte(","))
+		return fmt.Appendf(nil, "N1 %s %5s", cells[1], cells[2])
+	})
+	for _, tt := range tests {
+		t.Run(tt.name, func(t *testing.T) {
+			text := hours()
+			if strings.HasPrefix(tt.name, "widths") {
+				text = columns
+			}
+			short := text[:bytes.LastIndexByte(text[:len(text)/10], '\n')+1]
+			plan := hoursPlan(t, tt.layout)
+			allocations := func(text []byte) float64 {
+				return testing.AllocsPerRun(5, func() {
+					c, err := plan.Decode(t.Context(), bytes.NewReader(text), "", &adder{})
+					if err != nil || c.RowsRead == 0 || c.RowsSetAside > 0 {
+						t.Fatal(c, err)
+					}
+				})
+			}
+			if few, many := allocations(short), allocations(text); many > few {
+				t.Errorf("%v allocations for a tenth of the file, %v for all of it", few, many)
 			}
 		})
-	}
-	if few, many := allocations(short), allocations(text); many > few {
-		t.Errorf("%v allocations for a tenth of the file, %v for all of it", few, many)
 	}
 }
 
 func BenchmarkDecode(b *testing.B) {
-	text, plan := hours(), hoursPlan(b)
+	text, plan := hours(), hoursPlan(b, func(*pipeline.Layout) {})
 	b.SetBytes(int64(len(text)))
 	b.ReportAllocs()
 	for b.Loop() {

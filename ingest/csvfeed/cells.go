@@ -3,15 +3,18 @@ package csvfeed
 import (
 	"bytes"
 	"fmt"
+	"unicode/utf8"
 
 	"thawledger/ingest/normal"
 )
 
-// cells splits a line into its cells, with the quoting of RFC 4180.
+// cells splits a line into its cells, with the quoting of RFC 4180 if at all.
 type cells struct {
 	delimiter byte
-	blanks    bool // any run of blanks delimits; delimiter does not count then
-	need      int  // how many cells are wanted; the others are only counted
+	blanks    bool  // any run of blanks delimits; delimiter does not count then
+	widths    []int // characters of each cell, if nothing delimits them
+	unquoted  bool  // quotes are text
+	need      int   // how many cells are wanted; the others are only counted
 
 	list  [][]byte // the first need cells, valid until the next split
 	width int      // cells of the line
@@ -41,7 +44,11 @@ func (f quoteFault) text(line []byte) string {
 // split splits one line; ok is false if its quotes do not fit.
 func (c *cells) split(line []byte) (fault quoteFault, ok bool) {
 	c.list, c.plain, c.width = c.list[:0], c.plain[:0], 0
-	quoted := bytes.IndexByte(line, '"') >= 0
+	if c.widths != nil {
+		c.cut(line)
+		return fault, true
+	}
+	quoted := !c.unquoted && bytes.IndexByte(line, '"') >= 0
 	i := 0
 	if c.blanks {
 		i = skipBlanks(line, 0)
@@ -87,6 +94,27 @@ func (c *cells) split(line []byte) (fault quoteFault, ok bool) {
 				return fault, true
 			}
 		}
+	}
+}
+
+// cut takes cells by their widths in characters; the last has all that is left.
+// Those that the line does not reach are empty: editors cut blanks at its end.
+func (c *cells) cut(line []byte) {
+	c.width = len(c.widths)
+	for i, width := range c.widths[:min(c.width, c.need)] {
+		end := len(line)
+		if i < c.width-1 {
+			for end = 0; width > 0 && end < len(line); width-- {
+				if line[end] < utf8.RuneSelf {
+					end++
+					continue
+				}
+				_, size := utf8.DecodeRune(line[end:])
+				end += size
+			}
+		}
+		c.list = append(c.list, line[:end])
+		line = line[end:]
 	}
 }
 
@@ -139,5 +167,5 @@ func skipBlanks(line []byte, i int) int {
 // blank reports whether a line holds blanks only. A blank that delimits is a cell's.
 func (c *cells) blank(line []byte) bool {
 	rest := normal.Trim(line)
-	return len(rest) == 0 && (c.blanks || bytes.IndexByte(line, c.delimiter) < 0)
+	return len(rest) == 0 && (c.blanks || c.widths != nil || bytes.IndexByte(line, c.delimiter) < 0)
 }

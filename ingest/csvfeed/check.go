@@ -4,7 +4,6 @@ import (
 	"errors"
 	"fmt"
 	"maps"
-	"math"
 	"regexp"
 	"slices"
 	"strings"
@@ -19,6 +18,8 @@ const (
 	maxValues  = 1_000      // value columns
 	maxSpanS   = 366 * dayS // length of what a row covers
 	maxOffsetS = 14 * 3600  // of a station's standard time from UTC
+	maxHeader  = 1_000      // lines before the data, the preamble not counted
+	maxScale   = 1e9        // factor or summand
 )
 
 // faults gathers what is wrong with a layout.
@@ -32,6 +33,8 @@ func (f *faults) err() error { return errors.Join(f.list...) }
 
 func (f *faults) checkShape(layout *pipeline.Layout, p *Plan) {
 	switch d := layout.Delimiter; {
+	case len(layout.Widths) > 0:
+		f.checkWidths(layout, p)
 	case d == "space":
 		p.delimiter, p.blanks = ' ', true
 	case len(d) == 1 && (d == "\t" || d[0] >= ' ' && d[0] < 0x7f) && d != `"`:
@@ -42,12 +45,96 @@ func (f *faults) checkShape(layout *pipeline.Layout, p *Plan) {
 	if strings.ContainsAny(layout.Comment, "\r\n") {
 		f.add("comment", "%q holds a line end; comments are known by how a line begins", layout.Comment)
 	}
-	if layout.NamesLine < 0 {
-		f.add("names_line", "%d is no line; lines are numbered from 1, and 0 says that there are no names", layout.NamesLine)
+	switch layout.Quote {
+	case "":
+	case "none":
+		p.plainQuotes = true
+	default:
+		f.add("quote", "%q is not known; none says that quotes are text, and left out they quote cells", layout.Quote)
+	}
+	switch layout.Decimal {
+	case "", ".":
+	case ",":
+		if p.decimal = ','; p.delimiter == ',' {
+			f.add("decimal", `"," is the delimiter too; give another delimiter`)
+		}
+	default:
+		f.add("decimal", `%q is no decimal mark; "," is, and "." if it is left out`, layout.Decimal)
 	}
 	if m := layout.MaxSetAside; !(m >= 0 && m <= 1) {
 		f.add("max_set_aside", "%v is not a share from 0 to 1", m)
 	}
+}
+
+// checkWidths looks at the widths of columns that no delimiter parts.
+func (f *faults) checkWidths(layout *pipeline.Layout, p *Plan) {
+	if layout.Delimiter != "" {
+		f.add("delimiter", "%q cannot be with widths, which part the columns; leave one of them out", layout.Delimiter)
+	}
+	if n := len(layout.Widths); n > maxColumn {
+		f.add("widths", "there are %d columns; %d are the most", n, maxColumn)
+	}
+	for i, w := range layout.Widths {
+		if w < 1 || w > MaxLine {
+			f.add(fmt.Sprintf("widths[%d]", i), "%d is no width in characters; 1 to %d are", w, MaxLine)
+		}
+	}
+	p.widths = slices.Clone(layout.Widths)
+}
+
+// checkHeader looks at where names, units and data are.
+func (f *faults) checkHeader(layout *pipeline.Layout, p *Plan) {
+	p.namesLine, p.unitsLine = int64(layout.NamesLine), int64(layout.UnitsLine)
+	p.header = max(p.namesLine, p.unitsLine)
+	if layout.NamesLine < 0 {
+		f.add("names_line", "%d is no line; lines are numbered from 1, and 0 says that there are no names", layout.NamesLine)
+	}
+	if layout.UnitsLine < 0 {
+		f.add("units_line", "%d is no line; lines are numbered from 1, and 0 says that there are no units", layout.UnitsLine)
+	}
+	if p.unitsLine > 0 && p.unitsLine == p.namesLine {
+		f.add("units_line", "%d is the line of the names too", p.unitsLine)
+	}
+	switch n := int64(layout.DataLine); {
+	case n < 0:
+		f.add("data_line", "%d is no line; lines are numbered from 1, and left out data begin after names and units", n)
+	case n > 0 && n <= p.header:
+		f.add("data_line", "%d is not after the lines of names and units; the last of them is %d", n, p.header)
+	case n > 0:
+		p.header = n - 1
+	}
+	if p.header > maxHeader {
+		field := "names_line"
+		if layout.DataLine > 0 {
+			field = "data_line"
+		}
+		f.add(field, "the header has %d lines; %d are the most", p.header, maxHeader)
+	}
+	p.preambleEnds = f.expression("preamble_ends", layout.PreambleEnds, false)
+	for i := range layout.Values {
+		if trim(layout.Values[i].UnitText) != "" && p.unitsLine == 0 {
+			f.add(fmt.Sprintf("values[%d].unit_text", i), "there is no line of units to hold it against; say which it is by units_line")
+		}
+	}
+}
+
+// expression compiles a regular expression; nil for none or a bad one.
+func (f *faults) expression(field, text string, group bool) *regexp.Regexp {
+	if text == "" {
+		return nil
+	}
+	re, err := regexp.Compile(text)
+	switch {
+	case err != nil:
+		f.add(field, "%w", err)
+	case group && re.NumSubexp() < 1:
+		what := "name"
+		if field == "station.preamble" {
+			what = "line"
+		}
+		f.add(field, "%q has no group; put the part of the %s that is the station in parentheses", text, what)
+	}
+	return re
 }
 
 // checkTime returns the fixed offset, if the zone is one.
@@ -60,13 +147,28 @@ func (f *faults) checkTime(c *pipeline.TimeColumns, p *Plan) (offsetS int32, fix
 		f.add("time.format", "%w", err)
 	}
 	p.time = format
-	if c.Zone != "station" && !(c.Zone == "" && c.Covers == pipeline.CoversDay) {
+	epoch := format != nil && format.IsEpoch()
+	switch {
+	case epoch:
+		if fixed = true; c.Zone != "" && c.Zone != "Z" {
+			f.add("time.zone", "%q cannot be with format %s, which counts from 1970 in UTC; write Z", c.Zone, c.Format)
+		}
+		if c.Covers == pipeline.CoversDay {
+			f.add("time.format", "%s counts instants, and a day is a date; give a format with a date, or what else the row covers", c.Format)
+		}
+	case normal.IsZoneName(c.Zone):
+		fixed = true
+		f.checkZone(c, p)
+	case c.Zone != "station" && !(c.Zone == "" && c.Covers == pipeline.CoversDay):
 		if offsetS, err = normal.ParseOffset(c.Zone); err != nil {
-			f.add("time.zone", `%w, and not "station", which is the station's standard time`, err)
+			f.add("time.zone", `%w, not "station", which is the station's standard time, and no named zone such as America/Edmonton`, err)
 		} else if c.Covers == pipeline.CoversDay {
 			f.add("time.zone", "%q cannot be with covers day: a station's day goes by its utc_offset and day_starts; write station", c.Zone)
 		}
 		fixed = true
+	}
+	if !normal.IsZoneName(c.Zone) && (c.Ambiguous != "" || c.Skipped != "") {
+		f.add("time.zone", "%q has no times that are there twice or not at all; leave ambiguous and skipped out", c.Zone)
 	}
 	switch c.Covers {
 	case pipeline.CoversDay:
@@ -91,28 +193,46 @@ func (f *faults) checkTime(c *pipeline.TimeColumns, p *Plan) (offsetS int32, fix
 	return offsetS, fixed
 }
 
+// checkZone makes a named zone ready.
+func (f *faults) checkZone(c *pipeline.TimeColumns, p *Plan) {
+	if c.Covers == pipeline.CoversDay {
+		f.add("time.zone", "%q cannot be with covers day: a station's day goes by its utc_offset and day_starts; write station", c.Zone)
+	}
+	zone, err := normal.LoadZone(c.Zone, c.Ambiguous, c.Skipped)
+	if err != nil {
+		f.add("time.zone", "%w", err)
+	}
+	p.zone = zone
+	switch c.Ambiguous {
+	case pipeline.AmbiguousEarlier, pipeline.AmbiguousLater, pipeline.AmbiguousSetAside:
+	default:
+		f.add("time.ambiguous", "%q is none of earlier, later, set_aside: what a time is that the clocks of %s show twice", string(c.Ambiguous), c.Zone)
+	}
+	switch c.Skipped {
+	case pipeline.SkippedShift, pipeline.SkippedSetAside:
+	default:
+		f.add("time.skipped", "%q is none of shift, set_aside: what becomes of a time that the clocks of %s leave out", string(c.Skipped), c.Zone)
+	}
+}
+
 func (f *faults) checkStation(c *pipeline.StationColumn, p *Plan) {
 	var set []string
-	for _, way := range [...][2]string{{"column", c.Column}, {"file_name", c.FileName}, {"constant", c.Constant}} {
+	for _, way := range [...][2]string{{"column", c.Column}, {"file_name", c.FileName}, {"preamble", c.Preamble}, {"constant", c.Constant}} {
 		if way[1] != "" {
 			set = append(set, way[0])
 		}
 	}
 	switch len(set) {
 	case 0:
-		f.add("station", "none of column, file_name and constant is set; exactly one says which station a row is of")
+		f.add("station", "none of column, file_name, preamble and constant is set; exactly one says which station a row is of")
 	case 1:
 	default:
 		f.add("station", "%s are set; exactly one says which station a row is of", strings.Join(set, " and "))
 	}
-	if c.FileName != "" {
-		re, err := regexp.Compile(c.FileName)
-		if err != nil {
-			f.add("station.file_name", "%w", err)
-		} else if re.NumSubexp() < 1 {
-			f.add("station.file_name", "%q has no group; put the part of the name that is the station in parentheses", c.FileName)
-		}
-		p.fileName = re
+	p.fileName = f.expression("station.file_name", c.FileName, true)
+	p.preamble = f.expression("station.preamble", c.Preamble, true)
+	if p.preamble != nil && p.preambleEnds == nil && p.header <= min(1, p.namesLine) {
+		f.add("station.preamble", "there is no line before the names; say where they are by names_line, or how the preamble ends by preamble_ends")
 	}
 	for _, id := range slices.Sorted(maps.Keys(c.Clocks)) {
 		clock := c.Clocks[id]
@@ -123,103 +243,4 @@ func (f *faults) checkStation(c *pipeline.StationColumn, p *Plan) {
 			f.add("station.clocks", "day_starts_s %d of %q is not within a day (86400)", clock.DayStartsS, id)
 		}
 	}
-}
-
-func (f *faults) checkValues(layout *pipeline.Layout, p *Plan) {
-	if n := len(layout.Values); n == 0 || n > maxValues {
-		f.add("values", "there are %d columns; 1 to %d give the readings", n, maxValues)
-	}
-	first := map[pipeline.Series]int{}
-	for i := range layout.Values {
-		c := &layout.Values[i]
-		at := fmt.Sprintf("values[%d].", i)
-		variable, err := pipeline.ParseVariable(c.Variable)
-		if err != nil {
-			f.add(at+"variable", "%w", err)
-		}
-		covers := layout.Time.Covers
-		switch {
-		case err != nil || covers == "":
-		case variable == pipeline.AirTemp && covers != pipeline.CoversInstant:
-			f.add(at+"variable", "air_temp is a value at an instant, and time.covers is %s; air_temp_mean, air_temp_max or air_temp_min is right", covers)
-		case variable != pipeline.AirTemp && covers == pipeline.CoversInstant:
-			f.add(at+"variable", "%s is of a span, and time.covers is instant; air_temp is right, or day, ending or beginning", c.Variable)
-		}
-		if !slices.Contains(pipeline.TempUnits, c.Unit) {
-			f.add(at+"unit", "%q is no unit; known are %s", string(c.Unit), unitNames())
-		}
-		if math.IsNaN(c.LevelM) || math.IsInf(c.LevelM, 0) {
-			f.add(at+"level_m", "%v is no height in m", c.LevelM)
-		}
-		s := pipeline.Series{Sensor: c.Sensor, Variable: variable, LevelM: c.LevelM, SpanS: layout.Time.SpanS}
-		if j, twice := first[s]; twice && err == nil {
-			f.add(at+"sensor", "values[%d] has the same sensor, variable and level; readings of one would replace those of the other", j)
-		} else {
-			first[s] = i
-		}
-		p.series = append(p.series, s)
-		if c.Flag != nil {
-			f.checkFlag(at+"flag.", c.Flag)
-		}
-	}
-}
-
-func (f *faults) checkFlag(at string, c *pipeline.FlagColumn) {
-	if int(c.Empty) >= len(pipeline.Qualities) {
-		f.add(at+"empty", "%d is no quality mark; 0 to %d are", c.Empty, len(pipeline.Qualities)-1)
-	}
-	for _, text := range slices.Sorted(maps.Keys(c.Marks)) {
-		switch {
-		case trim(text) == "":
-			f.add(at+"marks", "there is a mark for the empty flag; it is set by empty")
-		case trim(text) != text:
-			f.add(at+"marks", "%q has blanks around it, which cells are read without; leave them out", text)
-		}
-		if m := c.Marks[text]; int(m) >= len(pipeline.Qualities) {
-			f.add(at+"marks", "%d of %q is no quality mark; 0 to %d are", m, text, len(pipeline.Qualities)-1)
-		}
-	}
-}
-
-// checkColumns looks at how the columns are named.
-func (f *faults) checkColumns(layout *pipeline.Layout) {
-	check := func(field, name string) {
-		n, isNumber := columnNumber(name)
-		switch {
-		case name == "":
-			f.add(field, "there is no column; name it as the header does, or by its number from 1")
-		case isNumber && n > maxColumn && layout.NamesLine == 0:
-			f.add(field, "column %d is past %d", n, maxColumn)
-		case !isNumber && layout.NamesLine == 0:
-			f.add(field, "%q is a name, and names_line is 0: there are no names; give the column's number from 1", name)
-		}
-	}
-	for i, name := range layout.Time.Columns {
-		check(fmt.Sprintf("time.columns[%d]", i), name)
-	}
-	if layout.Station.Column != "" {
-		check("station.column", layout.Station.Column)
-	}
-	first := map[string]int{}
-	for i := range layout.Values {
-		c := &layout.Values[i]
-		at := fmt.Sprintf("values[%d].", i)
-		check(at+"column", c.Column)
-		if j, twice := first[c.Column]; twice {
-			f.add(at+"column", "values[%d] reads column %q already", j, c.Column)
-		} else {
-			first[c.Column] = i
-		}
-		if c.Flag != nil {
-			check(at+"flag.column", c.Flag.Column)
-		}
-	}
-}
-
-func unitNames() string {
-	names := make([]string, len(pipeline.TempUnits))
-	for i, u := range pipeline.TempUnits {
-		names[i] = string(u)
-	}
-	return strings.Join(names, ", ")
 }

@@ -13,7 +13,8 @@ type columns struct {
 	time    []int
 	station int // -1 if no column says it
 	values  []int
-	flags   []int // by value; -1 for none
+	flags   []int   // by value; -1 for none
+	when    [][]int // by value, those of its conditions
 	names   []string
 	width   int // cells that a row has; 0 until it is known
 	need    int // cells that hold all that is mapped
@@ -24,26 +25,37 @@ type columns struct {
 func (p *Plan) resolve(names []string, line int64) (*columns, error) {
 	r := resolver{names: names}
 	c := &columns{names: names, width: len(names), station: -1}
-	for _, name := range p.timeColumns {
-		c.time = append(c.time, r.find(name))
+	for _, names := range p.timeColumns {
+		c.time = append(c.time, r.find(names))
 	}
-	if p.stationColumn != "" {
+	if p.stationColumn != nil {
 		c.station = r.find(p.stationColumn)
 	}
 	for i := range p.values {
 		v := &p.values[i]
-		n := r.find(v.column)
-		if j := slices.Index(c.values, n); j >= 0 && n >= 0 {
-			r.fault(v.column, fmt.Sprintf("columns %q and %q of the layout are one", p.values[j].column, v.column))
+		n := r.find(v.columns)
+		for j, other := range c.values {
+			if other == n && n >= 0 && !apart(p.values[j].when, v.when) {
+				r.fault(v.columns[0], fmt.Sprintf("columns %q and %q of the layout are one", p.values[j].columns[0], v.columns[0]))
+				break
+			}
 		}
 		c.values = append(c.values, n)
 		flag := -1
-		if v.flag != "" {
+		if v.flag != nil {
 			flag = r.find(v.flag)
 		}
 		c.flags = append(c.flags, flag)
+		var when []int
+		for _, w := range v.when {
+			when = append(when, r.find([]string{w.column}))
+		}
+		c.when = append(c.when, when)
 	}
 	c.need = r.most + 1
+	if p.widths != nil {
+		c.width = len(p.widths)
+	}
 	if len(r.faults) == 0 {
 		return c, nil
 	}
@@ -63,9 +75,31 @@ type resolver struct {
 	absent bool
 }
 
-// find returns the index of a column that the layout names by name or number; -1
-// after a fault.
-func (r *resolver) find(name string) int {
+// find returns the index of a column that the layout names by name or number, or
+// by several names of which the file has to have one; -1 after a fault.
+func (r *resolver) find(names []string) int {
+	if len(names) == 1 {
+		return r.findOne(names[0])
+	}
+	var there []string
+	for _, name := range names {
+		if slices.Contains(r.names, trim(name)) {
+			there = append(there, name)
+		}
+	}
+	switch len(there) {
+	case 0:
+		r.absent = true
+		r.fault(names[0], "there is none of the columns "+list(names))
+		return -1
+	case 1:
+		return r.findOne(there[0])
+	}
+	r.fault(names[0], fmt.Sprintf("the columns %s are there together, and the layout takes them for one; name the right one only", list(there)))
+	return -1
+}
+
+func (r *resolver) findOne(name string) int {
 	n, isNumber := columnNumber(name)
 	if r.names == nil {
 		r.most = max(r.most, n-1)

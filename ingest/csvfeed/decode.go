@@ -5,9 +5,7 @@ import (
 	"context"
 	"fmt"
 	"io"
-	"math"
 	"path"
-	"strings"
 
 	"thawledger/ingest/normal"
 	"thawledger/pipeline"
@@ -61,7 +59,7 @@ func (p *Plan) DecodeRest(ctx context.Context, head io.Reader, linesBefore int64
 }
 
 func (p *Plan) decoder(sink Sink) *decoder {
-	return &decoder{plan: p, sink: sink, cells: cells{delimiter: p.delimiter, blanks: p.blanks}}
+	return &decoder{plan: p, sink: sink, cells: cells{delimiter: p.delimiter, blanks: p.blanks, widths: p.widths, unquoted: p.plainQuotes}}
 }
 
 // decode deals with all lines of r.
@@ -82,21 +80,24 @@ func (d *decoder) decode(ctx context.Context, r io.Reader) (pipeline.Counts, err
 			return d.counts, err
 		}
 	}
-	if p := d.plan; d.before+d.counts.Lines < p.namesLine {
-		return d.counts, &HoldError{Text: fmt.Sprintf("the file ends after %d lines, and the column names are due on line %d", d.counts.Lines, p.namesLine)}
+	if err := d.checkEnd(); err != nil {
+		return d.counts, err
 	}
 	return d.counts, overShare(d.counts, d.plan.maxSetAside, d.first)
 }
 
-// learn reads names and the number of columns from the beginning of a file.
+// learn reads the header and the number of columns from the beginning of a file.
 func (d *decoder) learn(ctx context.Context, head io.Reader) error {
 	sink := d.sink
 	d.sink = nowhere{}
 	in := newLines(head)
-	for d.columns == nil || d.columns.width == 0 {
+	for d.number() <= d.header || d.columns.width == 0 {
 		line, long, err := in.next(ctx)
 		if err == io.EOF {
-			break // the rest will say
+			if err := d.checkEnd(); err != nil {
+				return err
+			}
+			break
 		}
 		if err != nil {
 			return fmt.Errorf("read line %d of the beginning: %w", d.number(), err)
@@ -120,18 +121,23 @@ func (nowhere) SetAside(pipeline.SetAside) error            { return nil }
 
 // decoder is the state of one Decode.
 type decoder struct {
-	plan    *Plan
-	sink    Sink
-	before  int64 // lines of the file before the first that is counted
-	counts  pipeline.Counts
-	cells   cells
-	columns *columns
+	plan     *Plan
+	sink     Sink
+	before   int64 // lines of the file before the first that is counted
+	counts   pipeline.Counts
+	cells    cells
+	columns  *columns
+	preamble int64    // lines of the preamble
+	header   int64    // the last line of the header; noEnd while the preamble goes on
+	units    []string // those of the line of units
 
 	fileID   string   // the feed's id of the station, where no column says it
 	station  *station // of fileID, or of the last row
 	lastID   []byte   // the feed's id of station, where a column says it
 	timeText []byte
-	first    string // of the rows set aside, the first: where and why
+	offset   normal.Offset // of the last row's time, where the zone is a named one
+	chosen   []int         // values that are of the row
+	first    string        // of the rows set aside, the first: where and why
 }
 
 // begin settles what needs no line.
@@ -147,8 +153,15 @@ func (d *decoder) begin(source string) error {
 	} else {
 		d.fileID = p.constant
 	}
-	if p.stationColumn == "" {
+	if p.stationColumn == nil {
 		d.station = p.stations[d.fileID]
+	}
+	if d.header = p.header; p.preambleEnds != nil {
+		d.header = noEnd
+	}
+	d.chosen = make([]int, 0, len(p.values))
+	for i := range p.values {
+		d.chosen = append(d.chosen, i)
 	}
 	if p.namesLine == 0 {
 		return d.resolve(nil)
@@ -168,14 +181,11 @@ func (d *decoder) resolve(names []string) (err error) {
 
 // line deals with the next line and counts it, unless it returns an error.
 func (d *decoder) line(line []byte, long bool) error {
-	n := d.number()
 	switch p := d.plan; {
-	case n == p.namesLine:
-		if err := d.names(line, long); err != nil {
+	case d.number() <= d.header:
+		if err := d.headerLine(line, long); err != nil {
 			return err
 		}
-		d.counts.Header++
-	case n < p.namesLine:
 		d.counts.Header++
 	case len(p.comment) > 0 && bytes.HasPrefix(line, p.comment):
 		d.counts.Comments++
@@ -188,24 +198,4 @@ func (d *decoder) line(line []byte, long bool) error {
 	}
 	d.counts.Lines++
 	return nil
-}
-
-// names takes the line of names.
-func (d *decoder) names(line []byte, long bool) error {
-	hold := func(text string) error {
-		return &HoldError{Line: d.number(), Text: "the column names cannot be read: " + text}
-	}
-	if long {
-		return hold(tooLong)
-	}
-	d.cells.need = math.MaxInt
-	if fault, ok := d.cells.split(line); !ok {
-		return hold(fault.text(line))
-	}
-	names := make([]string, 0, d.cells.width)
-	for _, cell := range d.cells.list {
-		names = append(names, strings.ToValidUTF8(string(normal.Trim(cell)), "\ufffd"))
-	}
-	d.cells.list = nil
-	return d.resolve(names)
 }

@@ -9,6 +9,7 @@ import (
 	"strings"
 	"testing"
 	"testing/iotest"
+	_ "time/tzdata"
 
 	"thawledger/pipeline"
 )
@@ -68,6 +69,44 @@ func planForFuzz(t testing.TB, delimiter string) *Plan {
 	return p
 }
 
+// plansOfForms are layouts of what planForFuzz does not have: a preamble with the
+// station, units, long form, a named zone, widths, quotes that are text.
+func plansOfForms(t testing.TB) []*Plan {
+	t.Helper()
+	clocks := map[string]pipeline.StationClock{"north": {}}
+	instant := func(format, zone string, columns ...string) pipeline.TimeColumns {
+		return pipeline.TimeColumns{Columns: columns, Format: format, Zone: zone, Covers: pipeline.CoversInstant}
+	}
+	long := func(sensor, what string, unit pipeline.TempUnit) pipeline.ValueColumn {
+		return pipeline.ValueColumn{Column: "value", Or: []string{"v"}, Variable: "air_temp", Sensor: sensor, Unit: unit, When: map[string][]string{"what": {what}}, UnitText: "x"}
+	}
+	layouts := []pipeline.Layout{
+		{
+			Delimiter: ";", Decimal: ",", PreambleEnds: "^end", NamesLine: 1, UnitsLine: 2, DataLine: 4, MaxSetAside: 1,
+			Time: instant("YYYY DDD hmm", "Z", "y", "d", "h"), Station: pipeline.StationColumn{Preamble: `of (\w+)`, Clocks: clocks},
+			Values: []pipeline.ValueColumn{long("a", "T", pipeline.DegC), long("b", "F", pipeline.DegF)},
+		},
+		{
+			Widths: []int{13, 5, 1}, Comment: "#", MaxSetAside: 1, Time: instant("epoch_ms", "", "1"), Station: pipeline.StationColumn{Constant: "north", Clocks: clocks},
+			Values: []pipeline.ValueColumn{{Column: "2", Variable: "air_temp", Unit: pipeline.DegC, Scale: 0.1, Offset: 1, When: map[string][]string{"3": {"", "a"}}}},
+		},
+		{
+			Delimiter: ",", Quote: "none", MaxSetAside: 1, Time: instant("MMM D YYYY h:mm:ss.f AM", "America/Edmonton", "1"), Station: pipeline.StationColumn{Constant: "north", Clocks: clocks},
+			Values: []pipeline.ValueColumn{{Column: "2", Variable: "air_temp", Unit: pipeline.DegC}},
+		},
+	}
+	layouts[2].Time.Ambiguous, layouts[2].Time.Skipped = pipeline.AmbiguousEarlier, pipeline.SkippedSetAside
+	var plans []*Plan
+	for i := range layouts {
+		p, err := Compile(&layouts[i])
+		if err != nil {
+			t.Fatal(err)
+		}
+		plans = append(plans, p)
+	}
+	return plans
+}
+
 // FuzzDecode: for any bytes the sums hold, the sink has been given what they
 // say, and it makes no difference in which pieces the bytes arrive.
 func FuzzDecode(f *testing.F) {
@@ -75,10 +114,12 @@ func FuzzDecode(f *testing.F) {
 		"", "time,temp\n2031-07-20 13:00,5\n", "\ufefftime,temp\r\n\"2031-07-20 13:00\",\"5\"\r\n2031-07-20 14:00,x\r\n#\r\n\r\n",
 		"203107201300 1.5 32 M north\n203107201400\t1.5  -99 \"\" north\n203107201500 1 1e2 E south\n", "time,temp\n\"2031-07-20 13:00,5\n2031-07-20 14:00,5\n",
 		"time,temp\rx\x00,\xff\r1,2,3\r", "203107201300,1.5,70,,north\n,,,,\n203107201300,1.5,9e9,M,north\n", "time,temp,time\n",
+		"log of north\nend\ny;d;h;what;value\n;;;;x\n---\n2031;201;30;T;-1,5\n2031;201;2400;F;32\n2031;201;0;H;y\nx;201;0;T;1\n2031\n", "of north\nend\ny;d;h;what;v;value\n;;;;x\n",
+		"194235120000012.5\n1942351200000 12.5a\n1942351200001-1   b \n\n#\n19423512000", "Nov 3 2024 1:00:00.000 AM,5\nMar 10 2024 2:30:00 AM,5\nJul 20 2031 1:00:00.5 PM,\"\n",
 	} {
 		f.Add([]byte(s))
 	}
-	plans := []*Plan{planForFuzz(f, ","), planForFuzz(f, "space"), planForFuzz(f, ";"), planForFuzz(f, "\t")}
+	plans := append([]*Plan{planForFuzz(f, ","), planForFuzz(f, "space"), planForFuzz(f, ";"), planForFuzz(f, "\t")}, plansOfForms(f)...)
 	f.Fuzz(func(t *testing.T, text []byte) {
 		if len(text) > 1<<16 {
 			return
@@ -94,7 +135,8 @@ func FuzzDecode(f *testing.F) {
 			if sums := c.Check(); sums != nil {
 				t.Fatal(sums)
 			}
-			if s.readings != c.CellsRead || s.rows*int64(len(p.values))+s.cells != c.CellsSetAside {
+			least, most := s.rows*p.cells+s.cells, s.rows*int64(len(p.values))+s.cells
+			if s.readings != c.CellsRead || c.CellsSetAside < least || c.CellsSetAside > most || c.RowsSetAside < s.rows {
 				t.Fatalf("given %d readings, %d rows, %d cells; counted %+v", s.readings, s.rows, s.cells, c)
 			}
 			if err == nil {
@@ -177,6 +219,33 @@ func TestSplitAtBlanks(t *testing.T) {
 			c := cells{delimiter: ' ', blanks: true, need: math.MaxInt}
 			if _, ok := c.split([]byte(tt.line)); !ok || !slices.Equal(texts(c.list), tt.want) || c.width != len(tt.want) {
 				t.Errorf("got %q, width %d, want %q", texts(c.list), c.width, tt.want)
+			}
+		})
+	}
+}
+
+func TestSplitByWidths(t *testing.T) {
+	tests := []struct {
+		name, line string
+		want       []string
+	}{
+		{"as wide as said", "abcdefg", []string{"ab", "cde", "fg"}},
+		{"longer", "abcdefghi", []string{"ab", "cde", "fghi"}},
+		{"shorter", "abcd", []string{"ab", "cd", ""}},
+		{"empty", "", []string{"", "", ""}},
+		{"two bytes a letter", "äbcéefü", []string{"äb", "cée", "fü"}},
+		{"quotes and delimiters", `",""` + "\t;", []string{`",`, "\"\"\t", ";"}},
+		{"no UTF-8", "a\xb0cde\xff", []string{"a\xb0", "cde", "\xff"}},
+	}
+	for _, tt := range tests {
+		t.Run(tt.name, func(t *testing.T) {
+			c := cells{widths: []int{2, 3, 2}, need: math.MaxInt}
+			if _, ok := c.split([]byte(tt.line)); !ok || !slices.Equal(texts(c.list), tt.want) || c.width != 3 {
+				t.Errorf("got %q, width %d, want %q", texts(c.list), c.width, tt.want)
+			}
+			c.need = 2
+			if _, ok := c.split([]byte(tt.line)); !ok || !slices.Equal(texts(c.list), tt.want[:2]) || c.width != 3 {
+				t.Errorf("the first two: got %q, width %d", texts(c.list), c.width)
 			}
 		})
 	}

@@ -16,17 +16,25 @@ import (
 type Plan struct {
 	delimiter   byte
 	blanks      bool
+	widths      []int
+	plainQuotes bool
+	decimal     byte
 	comment     []byte
-	namesLine   int64
 	maxSetAside float64
 
+	// Lines of the header, counted after the preamble; header is the last of them.
+	preambleEnds                 *regexp.Regexp
+	namesLine, unitsLine, header int64
+
 	time        *normal.TimeFormat
-	timeColumns []string
+	timeColumns [][]string // each with its other names
+	zone        *normal.Zone
 	covers      pipeline.Covers
 	spanS       int64
 
-	stationColumn string
+	stationColumn []string
 	fileName      *regexp.Regexp
+	preamble      *regexp.Regexp
 	constant      string
 	stations      map[string]*station // by the feed's id
 	ours          map[string]string   // the layout's Map
@@ -34,6 +42,8 @@ type Plan struct {
 
 	values []value
 	series []pipeline.Series
+	choice bool  // some values are not of all rows
+	cells  int64 // values that are of all rows
 }
 
 // station is what a row's station adds to its time.
@@ -44,10 +54,15 @@ type station struct {
 
 // value is a column that gives readings.
 type value struct {
-	column  string
+	columns []string // its column and what else that may be called
+	when    []condition
 	unit    pipeline.TempUnit
+	text    string // of the unit; "" for any
+	scaled  bool
+	scale   float64
+	offset  float64
 	missing []string
-	flag    string // column of the flag; "" for none
+	flag    []string // column of the flag, with its other names; nil for none
 	marks   map[string]pipeline.Quality
 	bare    pipeline.Quality // mark of a value that has no flag
 }
@@ -61,11 +76,19 @@ const dayS = 86400
 func Compile(layout *pipeline.Layout) (*Plan, error) {
 	f := &faults{}
 	p := &Plan{
-		comment: []byte(layout.Comment), namesLine: int64(layout.NamesLine), maxSetAside: layout.MaxSetAside,
-		timeColumns: slices.Clone(layout.Time.Columns), covers: layout.Time.Covers, spanS: int64(layout.Time.SpanS),
-		stationColumn: layout.Station.Column, constant: layout.Station.Constant,
+		comment: []byte(layout.Comment), maxSetAside: layout.MaxSetAside, decimal: '.',
+		covers: layout.Time.Covers, spanS: int64(layout.Time.SpanS),
+		stationColumn: names(layout.Station.Column, layout.Station.Or), constant: layout.Station.Constant,
+	}
+	for i, name := range layout.Time.Columns {
+		var or []string
+		if i < len(layout.Time.Or) {
+			or = layout.Time.Or[i]
+		}
+		p.timeColumns = append(p.timeColumns, names(name, or))
 	}
 	f.checkShape(layout, p)
+	f.checkHeader(layout, p)
 	offsetS, fixed := f.checkTime(&layout.Time, p)
 	f.checkStation(&layout.Station, p)
 	f.checkValues(layout, p)
@@ -112,18 +135,35 @@ func (p *Plan) resolveStations(c *pipeline.StationColumn, offsetS int32, fixed b
 func (p *Plan) resolveValues(layout *pipeline.Layout) {
 	for i := range layout.Values {
 		c := &layout.Values[i]
-		v := value{column: c.Column, unit: c.Unit, bare: pipeline.QualityNotChecked}
+		v := value{columns: names(c.Column, c.Or), unit: c.Unit, text: trim(c.UnitText), when: conditions(c), bare: pipeline.QualityNotChecked,
+			scaled: c.Scale != 0 || c.Offset != 0, scale: c.Scale, offset: c.Offset}
+		if v.scale == 0 {
+			v.scale = 1
+		}
+		if v.when == nil {
+			p.cells++
+		} else {
+			p.choice = true
+		}
 		for _, token := range c.Missing {
 			if token = trim(token); token != "" {
 				v.missing = append(v.missing, token)
 			}
 		}
 		if c.Flag != nil {
-			v.flag, v.bare = c.Flag.Column, c.Flag.Empty
+			v.flag, v.bare = names(c.Flag.Column, c.Flag.Or), c.Flag.Empty
 			v.marks = maps.Clone(c.Flag.Marks)
 		}
 		p.values = append(p.values, v)
 	}
+}
+
+// names puts a column's name before what else it may be called; nil for none.
+func names(name string, or []string) []string {
+	if name == "" {
+		return nil
+	}
+	return append([]string{name}, or...)
 }
 
 // columnNumber returns the number that a column is named by, from 1, and whether

@@ -24,16 +24,16 @@ func TestCompileRefuses(t *testing.T) {
 		{"share that is no number", func(l *pipeline.Layout) { l.MaxSetAside = math.NaN() }, `max_set_aside: NaN is not a share from 0 to 1`},
 		{"no time", func(l *pipeline.Layout) { l.Time.Columns = nil }, `time.columns: there are none; name the column that holds the time, or those that together do`},
 		{"format", func(l *pipeline.Layout) { l.Time.Format = "YYYY-MM" }, `time.format: format "YYYY-MM": there is no full date; it needs month and day, or the day of the year DDD`},
-		{"zone by name", func(l *pipeline.Layout) { l.Time.Zone = "UTC" }, `time.zone: "UTC" is no offset from UTC such as Z, +03:00 or -09:00, and not "station", which is the station's standard time`},
+		{"zone by name", func(l *pipeline.Layout) { l.Time.Zone = "UTC" }, `time.zone: "UTC" is no offset from UTC such as Z, +03:00 or -09:00, not "station", which is the station's standard time, and no named zone such as America/Edmonton`},
 		{"no zone", func(l *pipeline.Layout) {
 			l.Time.Zone, l.Time.Covers, l.Time.SpanS, l.Time.Format = "", "ending", 3600, "YYYY-MM-DD hh"
-		}, `time.zone: "" is no offset from UTC such as Z, +03:00 or -09:00, and not "station", which is the station's standard time`},
+		}, `time.zone: "" is no offset from UTC such as Z, +03:00 or -09:00, not "station", which is the station's standard time, and no named zone such as America/Edmonton`},
 		{"day with an offset", func(l *pipeline.Layout) { l.Time.Zone = "Z" }, `time.zone: "Z" cannot be with covers day: a station's day goes by its utc_offset and day_starts; write station`},
 		{"day that is short", func(l *pipeline.Layout) { l.Time.SpanS = 3600 }, `time.span_s: 3600 cannot be with covers day; 86400 is right`},
 		{"no span", func(l *pipeline.Layout) { l.Time.Covers, l.Time.SpanS, l.Time.Format = "beginning", 0, "YYYY-MM-DD hh" }, `time.span_s: 0 is not 1 to 31622400, the seconds that a row covers`},
 		{"no hour", func(l *pipeline.Layout) { l.Time.Covers, l.Time.SpanS = "ending", 3600 }, `time.format: format "YYYY-MM-DD" has no time of the day, which covers ending needs; add hh:mm, or cover day`},
 		{"unknown covers", func(l *pipeline.Layout) { l.Time.Covers = "hour" }, `time.covers: "hour" is none of instant, day, ending, beginning`},
-		{"no station", func(l *pipeline.Layout) { l.Station.Column = "" }, `station: none of column, file_name and constant is set; exactly one says which station a row is of`},
+		{"no station", func(l *pipeline.Layout) { l.Station.Column = "" }, `station: none of column, file_name, preamble and constant is set; exactly one says which station a row is of`},
 		{"two stations", func(l *pipeline.Layout) { l.Station.Constant = "north" }, `station: column and constant are set; exactly one says which station a row is of`},
 		{"expression", func(l *pipeline.Layout) { l.Station.Column, l.Station.FileName = "", "(" }, "station.file_name: error parsing regexp: missing closing ): `(`"},
 		{"expression without group", func(l *pipeline.Layout) { l.Station.Column, l.Station.FileName = "", `\d+` }, `station.file_name: "\\d+" has no group; put the part of the name that is the station in parentheses`},
@@ -107,6 +107,7 @@ func TestSeries(t *testing.T) {
 // TestPlanStandsByItself: a layout that changes does not change its plan.
 func TestPlanStandsByItself(t *testing.T) {
 	l := daily()
+	l.Values[0].When, l.Values[1].Or, l.Time.Or = map[string][]string{"flag": {"E"}}, []string{"low"}, [][]string{{"day"}}
 	plan, err := csvfeed.Compile(l)
 	if err != nil {
 		t.Fatal(err)
@@ -120,6 +121,7 @@ func TestPlanStandsByItself(t *testing.T) {
 	clear(l.Station.Clocks)
 	clear(l.Values[0].Flag.Marks)
 	l.Time.Columns[0], l.Values[0].Column, l.Values[0].Missing[0] = "x", "x", "1"
+	l.Values[0].When["flag"][0], l.Values[1].Or[0], l.Time.Or[0][0] = "x", "x", "x"
 	again := &written{series: plan.Series()}
 	if _, err := plan.Decode(t.Context(), strings.NewReader(text), "", again); err != nil {
 		t.Fatal(err)

@@ -19,18 +19,26 @@ func (d *decoder) row(line []byte, long bool) error {
 	if d.counts.Rows == math.MaxInt32 {
 		return &HoldError{Line: d.number(), Text: "there are more than 2147483647 rows; send the file in parts"}
 	}
-	code, text, startS := pipeline.LineTooLong, tooLong, int64(0)
+	c := rowCounts{cells: d.plan.cells}
+	code, text, at := pipeline.LineTooLong, tooLong, start{}
 	if !long {
-		code, text, startS = d.open(line)
+		if code, text = d.split(line); code == "" {
+			if d.plan.choice {
+				d.choose()
+				c.cells = int64(len(d.chosen))
+			}
+			if len(d.chosen) > 0 {
+				code, text, at = d.open()
+			}
+		}
 	}
-	c := rowCounts{cells: int64(len(d.plan.values))}
 	if code != "" {
-		c.setAside = c.cells
+		c.whole, c.setAside = true, c.cells
 		if err := d.setAside(line, -1, code, text); err != nil {
 			return err
 		}
 		c.why = text
-	} else if err := d.values(line, startS, &c); err != nil {
+	} else if err := d.values(line, at, &c); err != nil {
 		return err
 	}
 	d.add(&c)
@@ -40,7 +48,8 @@ func (d *decoder) row(line []byte, long bool) error {
 // rowCounts is what became of a row's mapped cells.
 type rowCounts struct {
 	cells, read, setAside int64
-	why                   string // of the first cell set aside
+	whole                 bool   // the row is set aside as a whole
+	why                   string // of the row, or of the first cell set aside
 }
 
 // add counts a row.
@@ -54,7 +63,7 @@ func (d *decoder) add(c *rowCounts) {
 	switch {
 	case c.read > 0:
 		n.RowsRead++
-	case c.setAside > 0:
+	case c.setAside > 0 || c.whole:
 		n.RowsSetAside++
 		if d.first == "" {
 			d.first = fmt.Sprintf("line %d: %s", d.number(), c.why)
@@ -64,42 +73,59 @@ func (d *decoder) add(c *rowCounts) {
 	}
 }
 
-// open splits a row and finds its station and the start of its span. A code says
-// that the row is to be set aside, and text why.
-func (d *decoder) open(line []byte) (code pipeline.Reason, text string, startS int64) {
+// split splits a row. A code says that the row is to be set aside, and text why.
+func (d *decoder) split(line []byte) (code pipeline.Reason, text string) {
 	if i := bytes.IndexByte(line, 0); i >= 0 {
-		return pipeline.BadText, fmt.Sprintf("there is a NUL at byte %d; UTF-8 text is right", i+1), 0
+		return pipeline.BadText, fmt.Sprintf("there is a NUL at byte %d; UTF-8 text is right", i+1)
 	}
 	if !utf8.Valid(line) {
-		return pipeline.BadText, badText(line), 0
+		return pipeline.BadText, badText(line)
 	}
 	if fault, ok := d.cells.split(line); !ok {
-		return pipeline.BadQuote, fault.text(line), 0
+		return pipeline.BadQuote, fault.text(line)
 	}
 	c := d.columns
 	if c.width == 0 {
 		if d.cells.width < c.need {
-			return pipeline.WrongWidth, fmt.Sprintf("has %d columns, the layout reads column %d", d.cells.width, c.need), 0
+			return pipeline.WrongWidth, fmt.Sprintf("has %d columns, the layout reads column %d", d.cells.width, c.need)
 		}
 		c.width = d.cells.width
 	}
 	if d.cells.width != c.width {
-		return pipeline.WrongWidth, fmt.Sprintf("has %d of %d columns", d.cells.width, c.width), 0
+		return pipeline.WrongWidth, fmt.Sprintf("has %d of %d columns", d.cells.width, c.width)
 	}
-	if c.station >= 0 {
+	return "", ""
+}
+
+// start is where the span of a row begins.
+type start struct {
+	atS      int64
+	resolved bool // by the rule of a named zone
+}
+
+// open finds the station of a row and the start of its span. A code says that the
+// row is to be set aside, and text why.
+func (d *decoder) open() (code pipeline.Reason, text string, at start) {
+	if c := d.columns; c.station >= 0 {
 		if id := normal.Trim(d.cells.list[c.station]); d.station == nil || !bytes.Equal(id, d.lastID) {
 			d.station = d.plan.stations[string(id)]
 			d.lastID = append(d.lastID[:0], id...)
 		}
 	}
 	if d.station == nil {
-		return pipeline.UnknownStation, d.unknownStation(), 0
+		return pipeline.UnknownStation, d.unknownStation(), at
 	}
-	at, err := d.time()
+	civil, err := d.time()
+	if err == nil && d.plan.zone != nil {
+		at.atS, at.resolved, err = d.plan.zone.UnixS(civil, &d.offset)
+	} else {
+		at.atS = civil.UnixS()
+	}
 	if err != nil {
-		return pipeline.BadTime, fmt.Sprintf("%s: %s", d.timeColumns(), err), 0
+		return pipeline.BadTime, fmt.Sprintf("%s: %s", d.timeColumns(), err), at
 	}
-	return "", "", at.UnixS() + d.station.shiftS
+	at.atS += d.station.shiftS
+	return "", "", at
 }
 
 // time reads the row's time.
@@ -121,10 +147,10 @@ func (d *decoder) time() (normal.Civil, error) {
 }
 
 // values reads the mapped cells of a row.
-func (d *decoder) values(line []byte, startS int64, c *rowCounts) error {
+func (d *decoder) values(line []byte, at start, c *rowCounts) error {
 	row := int32(d.counts.Rows + 1)
-	for i := range d.plan.values {
-		r := pipeline.Reading{Row: row, StartS: startS}
+	for _, i := range d.chosen {
+		r := pipeline.Reading{Row: row, StartS: at.atS}
 		missing, fault := d.value(i, &r)
 		switch {
 		case missing:
@@ -136,6 +162,9 @@ func (d *decoder) values(line []byte, startS int64, c *rowCounts) error {
 				c.why = d.columns.describe(fault.column) + ": " + fault.text
 			}
 		default:
+			if at.resolved && (r.Quality == pipeline.QualityGood || r.Quality == pipeline.QualityNotChecked) {
+				r.Quality = pipeline.QualityChanged
+			}
 			if err := d.sink.Reading(d.station.id, i, r); err != nil {
 				return err
 			}
@@ -178,9 +207,12 @@ func (d *decoder) value(i int, r *pipeline.Reading) (missing bool, fault cellFau
 			return true, fault
 		}
 	}
-	x, err := normal.ParseNumber(cell)
+	x, err := normal.ParseDecimal(cell, d.plan.decimal)
 	if err != nil {
 		return false, cellFault{at, pipeline.BadNumber, err.Error()}
+	}
+	if v.scaled {
+		x = float64(x*v.scale) + v.offset
 	}
 	if r.ValueC, err = normal.Celsius(x, v.unit); err != nil {
 		return false, cellFault{at, pipeline.OutOfBounds, err.Error()}

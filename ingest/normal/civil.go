@@ -21,8 +21,11 @@ func (c Civil) UnixS() int64 { return int64(c.Day)*86400 + int64(c.SecondS) }
 // in leap years only, day of the year to 365 or 366, no leap second. 24:00 and
 // 24:00:00 are taken if the format has hours and minutes, and are the end of
 // the day named: the same instant as 00:00 of the next. What the format does
-// not state is 0.
+// not state is 0. Of a count of seconds the result is the civil time of UTC.
 func (f *TimeFormat) Parse(text []byte) (Civil, error) {
+	if f.epoch > 0 {
+		return f.parseEpoch(text)
+	}
 	var v [numKinds]int
 	i := 0
 	for k := range f.parts {
@@ -32,6 +35,15 @@ func (f *TimeFormat) Parse(text []byte) (Civil, error) {
 				return Civil{}, f.misfit(text, i, k)
 			}
 			i++
+			continue
+		}
+		if p.how > hourMinute {
+			n, size := p.read(text[i:])
+			if size < 0 {
+				return Civil{}, f.misfit(text, i, k)
+			}
+			v[p.kind] = n
+			i += size
 			continue
 		}
 		n, first := 0, i
@@ -48,6 +60,10 @@ func (f *TimeFormat) Parse(text []byte) (Civil, error) {
 				n += 100
 			}
 		}
+		if p.how == hourMinute {
+			v[minute] = n % 100
+			n /= 100
+		}
 		v[p.kind] = n
 	}
 	if i < len(text) {
@@ -61,6 +77,12 @@ func (f *TimeFormat) Parse(text []byte) (Civil, error) {
 	}
 	if why := f.outside(&v); why != nil {
 		return Civil{}, fmt.Errorf("%s is no time of the form %s: %w", Quote(text), f.text, why)
+	}
+	switch {
+	case v[half] == 1 && v[hour] == 12:
+		v[hour] = 0
+	case v[half] == 2 && v[hour] < 12:
+		v[hour] += 12
 	}
 	return Civil{
 		Day:     pipeline.Day(daysFromCivil(v[year], v[month], v[day]) + v[yearDay] - 1),
@@ -79,6 +101,10 @@ func (f *TimeFormat) outside(v *[numKinds]int) error {
 		return fmt.Errorf("day %d is not 1 to %d, the days of %04d-%02d", v[day], daysIn(v[year], v[month]), v[year], v[month])
 	case v[yearDay] < 1 || v[yearDay] > 365+leap(v[year]):
 		return fmt.Errorf("day of the year %d is not 1 to %d, the days of %04d", v[yearDay], 365+leap(v[year]), v[year])
+	case f.has[half] && (v[hour] < 1 || v[hour] > 12):
+		return fmt.Errorf("hour %d is not 1 to 12, the hours beside AM and PM", v[hour])
+	case v[fraction] != 0:
+		return errFraction
 	case v[hour] == 24 && f.has[minute] && v[minute] == 0 && v[second] == 0:
 		return nil
 	case v[hour] == 24 && f.has[minute]:
@@ -93,6 +119,98 @@ func (f *TimeFormat) outside(v *[numKinds]int) error {
 	return nil
 }
 
+var errFraction = errors.New("the second has a fraction that is not 0, and readings are at whole seconds")
+
+// read reads a field that is not digits alone from the beginning of text, and
+// returns how many bytes it has; -1 if it is not there.
+func (p *part) read(text []byte) (n, size int) {
+	switch p.how {
+	case monthName:
+		const names = "janfebmaraprmayjunjulaugsepoctnovdec"
+		for m := 0; len(text) >= 3 && m < 12; m++ {
+			if text[0]|0x20 == names[3*m] && text[1]|0x20 == names[3*m+1] && text[2]|0x20 == names[3*m+2] {
+				return m + 1, 3
+			}
+		}
+	case amPM:
+		if len(text) >= 2 && text[1]|0x20 == 'm' {
+			switch text[0] | 0x20 {
+			case 'a':
+				return 1, 2
+			case 'p':
+				return 2, 2
+			}
+		}
+	default: // zeros
+		if len(text) == 0 || text[0] != p.char {
+			return 0, 0
+		}
+		for size = 1; size < len(text) && size <= p.max && text[size]-'0' <= 9; size++ {
+			n |= int(text[size] - '0')
+		}
+		if size > 1 {
+			return n, size
+		}
+	}
+	return 0, -1
+}
+
+// Seconds since 1970 of the years 1 to 9999.
+const (
+	firstS = -62135596800
+	lastS  = 253402300799
+)
+
+// parseEpoch reads a count of seconds or milliseconds.
+func (f *TimeFormat) parseEpoch(text []byte) (Civil, error) {
+	if len(text) == 0 {
+		return Civil{}, fmt.Errorf("there is no time; %s is right, such as %d", f.text, 1767225600*f.epoch)
+	}
+	i, n := 0, int64(0)
+	if text[0] == '-' {
+		i++
+	}
+	first := i
+	for ; i < len(text) && text[i]-'0' <= 9; i++ {
+		n = min(n*10+int64(text[i]-'0'), 1e16)
+	}
+	fail := func(why error) (Civil, error) {
+		return Civil{}, fmt.Errorf("%s is no time of the form %s: %w", Quote(text), f.text, why)
+	}
+	if i == first || i < len(text) && text[i] != '.' {
+		what := "it ends"
+		if i < len(text) {
+			what = found(text, i)
+		}
+		return fail(errors.New(what + " where a digit is right"))
+	}
+	if i < len(text) {
+		p := part{how: zeros, char: '.', max: maxFraction}
+		part, size := p.read(text[i:])
+		switch {
+		case size < 0 || i+size < len(text):
+			return fail(errors.New("after the point only zeros are right"))
+		case part != 0:
+			return fail(errFraction)
+		}
+	}
+	if text[0] == '-' {
+		n = -n
+	}
+	if n%f.epoch != 0 {
+		return fail(errFraction)
+	}
+	n /= f.epoch
+	if n < firstS || n > lastS {
+		return fail(errors.New("that is not in the years 1 to 9999"))
+	}
+	d := n / 86400
+	if n%86400 < 0 {
+		d--
+	}
+	return Civil{Day: pipeline.Day(d), SecondS: int32(n - d*86400)}, nil
+}
+
 // misfit says where text leaves the format: at byte i, where part k is due.
 func (f *TimeFormat) misfit(text []byte, i, k int) error {
 	if len(text) == 0 {
@@ -105,6 +223,12 @@ func (f *TimeFormat) misfit(text []byte, i, k int) error {
 	due := "the end"
 	if k < len(f.parts) {
 		switch p := f.parts[k]; {
+		case p.how == monthName:
+			due = p.field + " (Jan to Dec)"
+		case p.how == amPM:
+			due = "AM or PM"
+		case p.how == zeros:
+			due = p.field + " (zeros)"
 		case p.kind == literal:
 			due = fmt.Sprintf("%q", p.char)
 		case p.min == p.max:

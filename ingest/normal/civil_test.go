@@ -78,7 +78,7 @@ func TestParseTime(t *testing.T) {
 }
 
 func TestCompileTimeRefuses(t *testing.T) {
-	const all = "; fields are YYYY YY MM M D DD DDD hh h mm ss"
+	const all = "; fields are YYYY YY MMM MM M D DD DDD hh h hmm mm ss .f AM"
 	tests := []struct{ name, format, err string }{
 		{"empty", "", `format "": there is no year; add YYYY`},
 		{"no date", "YYYY hh:mm", `format "YYYY hh:mm": there is no full date; it needs month and day, or the day of the year DDD`},
@@ -148,6 +148,7 @@ func FuzzTime(f *testing.F) {
 	for _, s := range [][2]string{
 		{"YYYY-MM-DD hh:mm:ss", "2017-05-01 00:05:00"}, {"M/D/YYYY", "2/29/1965"}, {"YYYY DDD", "2002 366"},
 		{"YYYYMMDD", "20200101"}, {"YYYY-MM-DDThh:mmZ", "2009-06-04T24:00Z"}, {"DDDYYhhmm", "365690000"}, {"YY°MMDD", "31\xb00101"},
+		{"YYYY DDD hmm", "2031 201 30"}, {"DMMMYY h:mm:ss.fAM", "20Jul31 12:00:00.000pm"}, {"epoch_ms", "-1234567890000.0"},
 	} {
 		f.Add(s[0], []byte(s[1]))
 	}
@@ -175,12 +176,23 @@ func TestParseAllocatesNothing(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
+	g, err := normal.CompileTime("DMMMYYYY h:mm:ss.f AM")
+	if err != nil {
+		t.Fatal(err)
+	}
+	e, err := normal.CompileTime("epoch_ms")
+	if err != nil {
+		t.Fatal(err)
+	}
 	text, number := []byte("2031-07-20 13:00"), []byte("-12.5")
+	odd, count := []byte("20Jul2031 1:00:00.000 PM"), []byte("1234567890000")
 	n := testing.AllocsPerRun(100, func() {
 		_, err1 := f.Parse(text)
+		_, err4 := g.Parse(odd)
+		_, err5 := e.Parse(count)
 		v, err2 := normal.ParseNumber(number)
 		_, err3 := normal.Celsius(v, "degF")
-		if err := errors.Join(err1, err2, err3); err != nil {
+		if err := errors.Join(err1, err2, err3, err4, err5); err != nil {
 			t.Fatal(err)
 		}
 	})

@@ -1,9 +1,9 @@
 package normal
 
 import (
-	"errors"
 	"fmt"
 	"strconv"
+	"strings"
 )
 
 // exactPowers holds the powers of ten that float64 has exactly.
@@ -16,12 +16,16 @@ var exactPowers = [...]float64{
 // (".5" and "5.", as loggers write, included), exponent; sign and exponent may
 // be left out, blanks around it are let be. It returns the float64 next to the
 // number, always finite. Hexadecimal, underscores, infinities, NaN, thousands
-// marks and the decimal comma are errors.
+// marks and the decimal comma are errors; ParseDecimal reads the latter.
 //
 // Up to 2^53 and ten to the 22nd both the digits and the power of ten are exact
 // in float64, so one multiplication or division rounds right (W. D. Clinger, How
 // to read floating point numbers accurately, 1990); all else is left to strconv.
-func ParseNumber(text []byte) (float64, error) {
+func ParseNumber(text []byte) (float64, error) { return ParseDecimal(text, '.') }
+
+// ParseDecimal is ParseNumber with another decimal mark: a point or a comma. The
+// one that is not the mark is an error.
+func ParseDecimal(text []byte, mark byte) (float64, error) {
 	text = Trim(text)
 	i := 0
 	negative := false
@@ -44,13 +48,13 @@ func ParseNumber(text []byte) (float64, error) {
 			}
 			continue
 		}
-		if text[i] != '.' || point {
+		if text[i] != mark || point {
 			break
 		}
 		point = true
 	}
 	if digits == 0 {
-		return 0, noNumber(text, i, digits)
+		return 0, noNumber(text, i, digits, mark)
 	}
 	if i < len(text) && text[i]|0x20 == 'e' {
 		i++
@@ -64,7 +68,7 @@ func ParseNumber(text []byte) (float64, error) {
 			e = min(e*10+int(text[i]-'0'), 1e6)
 		}
 		if i == first {
-			return 0, noNumber(text, i, digits)
+			return 0, noNumber(text, i, digits, mark)
 		}
 		if down {
 			e = -e
@@ -72,10 +76,10 @@ func ParseNumber(text []byte) (float64, error) {
 		scale += e
 	}
 	if i < len(text) {
-		return 0, noNumber(text, i, digits)
+		return 0, noNumber(text, i, digits, mark)
 	}
 	if m >= 1<<53 || scale < -22 || scale > 22 {
-		return parseSlowly(text)
+		return parseSlowly(text, mark)
 	}
 	v := float64(m)
 	if scale < 0 {
@@ -90,8 +94,8 @@ func ParseNumber(text []byte) (float64, error) {
 }
 
 // parseSlowly reads what is known to be written as a number.
-func parseSlowly(text []byte) (float64, error) {
-	v, err := strconv.ParseFloat(string(text), 64)
+func parseSlowly(text []byte, mark byte) (float64, error) {
+	v, err := strconv.ParseFloat(strings.Replace(string(text), string(rune(mark)), ".", 1), 64)
 	if err != nil {
 		return 0, fmt.Errorf("%s is too large a number", Quote(text))
 	}
@@ -99,19 +103,23 @@ func parseSlowly(text []byte) (float64, error) {
 }
 
 // noNumber says where text stops being a number: at byte i, after so many digits.
-func noNumber(text []byte, i, digits int) error {
+func noNumber(text []byte, i, digits int, mark byte) error {
+	example, other, words := "-12.5", byte(','), `the decimal mark is a point where the layout does not say decimal: ",", and thousands have none`
+	if mark == ',' {
+		example, other, words = "-12,5", '.', `the layout says decimal: ",", and thousands have no mark`
+	}
 	if len(text) == 0 {
-		return errors.New("there is no number; one such as -12.5 is right")
+		return fmt.Errorf("there is no number; one such as %s is right", example)
 	}
 	what := "it ends where a digit is right"
 	if i < len(text) {
 		what = found(text, i)
 		switch {
-		case text[i] == ',':
-			what += "; the decimal mark is a point, and thousands have none"
+		case text[i] == other:
+			what += "; " + words
 		case digits == 0:
 			what += "; a text that stands for no value is declared as missing"
 		}
 	}
-	return fmt.Errorf("%s is no number such as -12.5: %s", Quote(text), what)
+	return fmt.Errorf("%s is no number such as %s: %s", Quote(text), example, what)
 }

@@ -35,8 +35,8 @@ func TestParseNumber(t *testing.T) {
 		{name: "blank", text: "  ", err: "there is no number; one such as -12.5 is right"},
 		{name: "sign only", text: "-", err: `"-" is no number such as -12.5: it ends where a digit is right`},
 		{name: "point only", text: ".", err: `"." is no number such as -12.5: it ends where a digit is right`},
-		{name: "decimal comma", text: "12,5", err: `"12,5" is no number such as -12.5: found ',' at character 3; the decimal mark is a point, and thousands have none`},
-		{name: "thousands", text: "1,234.5", err: `"1,234.5" is no number such as -12.5: found ',' at character 2; the decimal mark is a point, and thousands have none`},
+		{name: "decimal comma", text: "12,5", err: `"12,5" is no number such as -12.5: found ',' at character 3; the decimal mark is a point where the layout does not say decimal: ",", and thousands have none`},
+		{name: "thousands", text: "1,234.5", err: `"1,234.5" is no number such as -12.5: found ',' at character 2; the decimal mark is a point where the layout does not say decimal: ",", and thousands have none`},
 		{name: "not a number", text: "NaN", err: `"NaN" is no number such as -12.5: found 'N' at character 1; a text that stands for no value is declared as missing`},
 		{name: "infinity", text: "-inf", err: `"-inf" is no number such as -12.5: found 'i' at character 2; a text that stands for no value is declared as missing`},
 		{name: "trace", text: "T", err: `"T" is no number such as -12.5: found 'T' at character 1; a text that stands for no value is declared as missing`},
@@ -62,6 +62,35 @@ func TestParseNumber(t *testing.T) {
 	}
 }
 
+func TestParseDecimalComma(t *testing.T) {
+	tests := []struct {
+		name, text string
+		want       float64
+		err        string
+	}{
+		{name: "comma", text: "-12,5", want: -12.5},
+		{name: "no digit before the comma", text: ",5", want: 0.5},
+		{name: "no digit after the comma", text: "23,", want: 23},
+		{name: "exponent", text: "1,25e+1", want: 12.5},
+		{name: "whole", text: "12", want: 12},
+		{name: "many digits", text: "0,349065850398866123456789", want: 0.349065850398866123456789},
+		{name: "point", text: "12.5", err: `"12.5" is no number such as -12,5: found '.' at character 3; the layout says decimal: ",", and thousands have no mark`},
+		{name: "thousands", text: "1.234,5", err: `"1.234,5" is no number such as -12,5: found '.' at character 2; the layout says decimal: ",", and thousands have no mark`},
+		{name: "two commas", text: "1,2,3", err: `"1,2,3" is no number such as -12,5: found ',' at character 4`},
+		{name: "comma only", text: ",", err: `"," is no number such as -12,5: it ends where a digit is right`},
+		{name: "empty", text: "", err: "there is no number; one such as -12,5 is right"},
+		{name: "too large", text: "1,5e400", err: `"1,5e400" is too large a number`},
+	}
+	for _, tt := range tests {
+		t.Run(tt.name, func(t *testing.T) {
+			got, err := normal.ParseDecimal([]byte(tt.text), ',')
+			if errText(err) != tt.err || got != tt.want {
+				t.Errorf("got %v, %s\nwant %v, %s", got, errText(err), tt.want, tt.err)
+			}
+		})
+	}
+}
+
 var grammar = regexp.MustCompile(`^[ \t]*[+-]?([0-9]+\.?[0-9]*|\.[0-9]+)([eE][+-]?[0-9]+)?[ \t]*$`)
 
 // checkNumber compares ParseNumber with the grammar and the standard library.
@@ -73,6 +102,10 @@ func checkNumber(t interface{ Fatalf(string, ...any) }, text string) {
 	}
 	if err == nil && math.Float64bits(got) != math.Float64bits(want) {
 		t.Fatalf("%q: got %v, want %v", text, got, want)
+	}
+	comma, commaErr := normal.ParseDecimal([]byte(strings.ReplaceAll(text, ".", ",")), ',')
+	if plain := !strings.Contains(text, ","); plain && (math.Float64bits(comma) != math.Float64bits(got) || (commaErr == nil) != (err == nil)) {
+		t.Fatalf("%q with a comma: got %v, %v; want %v, %v", text, comma, commaErr, got, err)
 	}
 }
 
