@@ -85,7 +85,7 @@ func TestDecodeForms(t *testing.T) {
 		}, "Station: N1\nStation: N2\nDATA\ntime,temp\n2031-07-20 13:00,5\n", five + counts("lines 5 = 4 header + 0 blank + 0 comments + 1 rows")},
 		{"station from a line before the names", func(l *pipeline.Layout) {
 			l.NamesLine, l.Station = 2, pipeline.StationColumn{Preamble: `"(\w+)"`, Clocks: l.Station.Clocks}
-		}, "TOA5,\"north\",logger\ntime,temp\n2031-07-20 13:00,5\n", five + counts("lines 3 = 2 header + 0 blank + 0 comments + 1 rows")},
+		}, "LOG,\"north\",logger\ntime,temp\n2031-07-20 13:00,5\n", five + counts("lines 3 = 2 header + 0 blank + 0 comments + 1 rows")},
 		{"station from the last line of a preamble", func(l *pipeline.Layout) {
 			l.NamesLine, l.Time.Columns, l.Values[0].Column = 0, []string{"1"}, "2"
 			l.PreambleEnds, l.Station = `^\w+:$`, pipeline.StationColumn{Preamble: `^(\w+):$`, Clocks: l.Station.Clocks}

@@ -124,6 +124,65 @@ func TestShapes(t *testing.T) {
 				3 valley air_temp 2031-05-02T08:00:00 -0.5 not_checked
 				lines 4 = 1 header + 0 blank + 0 comments + 3 rows; rows 2 read, 1 without value, 0 set aside; cells 2 read, 1 missing, 0 set aside`,
 		},
+		{
+			file: "four_line_header.dat", // station, names, units and kinds of value in four lines
+			layout: pipeline.Layout{
+				Delimiter: ",", NamesLine: 2, UnitsLine: 3, DataLine: 5, MaxSetAside: 0.5,
+				Time:    pipeline.TimeColumns{Columns: []string{"end of hour"}, Format: "YYYY-MM-DD hh:mm:ss.f", Zone: "station", Covers: pipeline.CoversEnding, SpanS: 3600},
+				Station: pipeline.StationColumn{Preamble: `^"LOG","(\w+)"`, Map: map[string]string{"N7": "pass"}, Clocks: map[string]pipeline.StationClock{"pass": {UTCOffsetS: -9 * 3600}}},
+				Values:  []pipeline.ValueColumn{{Column: "air mean", Or: []string{"air mean 2m"}, Variable: "air_temp_mean", Unit: pipeline.DegC, UnitText: "Deg C", Missing: []string{"NAN"}}},
+			},
+			want: `1 pass air_temp_mean 2031-05-02T09:00:00 -3.25 not_checked
+				3 pass air_temp_mean 2031-05-03T08:00:00 -1.75 not_checked
+				lines 7 = 4 header + 0 blank + 0 comments + 3 rows; rows 2 read, 1 without value, 0 set aside; cells 2 read, 1 missing, 0 set aside`,
+		},
+		{
+			file: "long_form.txt", // a row for each parameter, decimal comma, names of months
+			layout: pipeline.Layout{
+				Delimiter: ";", Decimal: ",", PreambleEnds: "^START$", NamesLine: 1, MaxSetAside: 0.5,
+				Time:    pipeline.TimeColumns{Columns: []string{"when"}, Format: "DD-MMM-YYYY hh:mm", Zone: "Z", Covers: pipeline.CoversEnding, SpanS: 3600},
+				Station: pipeline.StationColumn{Column: "site", Map: map[string]string{"101": "fell", "102": "tarn"}, Clocks: map[string]pipeline.StationClock{"fell": {}, "tarn": {}}},
+				Values: []pipeline.ValueColumn{
+					{Column: "value", When: map[string][]string{"parameter": {"TA_1.5"}}, Variable: "air_temp_mean", Unit: pipeline.DegC, LevelM: 1.5, Flag: &pipeline.FlagColumn{Column: "mark", Marks: map[string]pipeline.Quality{"s": doubtful}}},
+					{Column: "value", When: map[string][]string{"parameter": {"TG_0.5"}}, Variable: "air_temp_mean", Unit: pipeline.DegC, LevelM: -0.5},
+				},
+			},
+			want: `1 fell air_temp_mean 2031-03-01T12:00:00 -12.4 good
+				3 tarn air_temp_mean 2031-03-01T12:00:00 -11.9 doubtful
+				4 tarn air_temp_mean 2031-03-01T12:00:00 -4.25 not_checked
+				! line 11 row 7 column 0 "" unknown_station: station "103" in column 1 "site" is not among the feed's: "101", "102", "fell", "tarn"
+				lines 11 = 4 header + 0 blank + 0 comments + 7 rows; rows 3 read, 3 without value, 1 set aside; cells 3 read, 0 missing, 1 set aside`,
+		},
+		{
+			file: "fixed_width.txt", // year, day of the year, hours and minutes; tenths without a point
+			layout: pipeline.Layout{
+				Widths: []int{2, 5, 4, 5, 5, 2}, MaxSetAside: 0.5,
+				Time:    pipeline.TimeColumns{Columns: []string{"2", "3", "4"}, Format: "YYYY DDD hmm", Zone: "-09:00", Covers: pipeline.CoversInstant},
+				Station: pipeline.StationColumn{Column: "1", Map: map[string]string{"12": "spit"}, Clocks: map[string]pipeline.StationClock{"spit": {}}},
+				Values: []pipeline.ValueColumn{{Column: "5", Variable: "air_temp", Unit: pipeline.DegC, Scale: 0.1, Missing: []string{"9999"},
+					Flag: &pipeline.FlagColumn{Column: "6", Marks: map[string]pipeline.Quality{"0": good, "1": doubtful}, Empty: pipeline.QualityNotChecked}}},
+			},
+			want: `1 spit air_temp 2031-04-30T09:30:00 -10.5 good
+				2 spit air_temp 2031-04-30T10:30:00 -9.8 doubtful
+				4 spit air_temp 2031-05-01T09:00:00 -7.2 not_checked
+				lines 4 = 0 header + 0 blank + 0 comments + 4 rows; rows 3 read, 1 without value, 0 set aside; cells 3 read, 1 missing, 0 set aside`,
+		},
+		{
+			file: "local_time.csv", // the clock on the wall, with AM and PM
+			layout: pipeline.Layout{
+				Delimiter: ",", NamesLine: 1, MaxSetAside: 0.5,
+				Time: pipeline.TimeColumns{Columns: []string{"Local time"}, Format: "M/D/YYYY h:mm AM", Zone: "America/Anchorage",
+					Ambiguous: pipeline.AmbiguousEarlier, Skipped: pipeline.SkippedSetAside, Covers: pipeline.CoversInstant},
+				Station: pipeline.StationColumn{Constant: "cove", Clocks: map[string]pipeline.StationClock{"cove": {UTCOffsetS: -9 * 3600}}},
+				Values:  []pipeline.ValueColumn{{Column: "Temp", Variable: "air_temp", Unit: pipeline.DegF}},
+			},
+			want: `1 cove air_temp 2030-11-03T08:30:00 -1.11111 not_checked
+				2 cove air_temp 2030-11-03T09:30:00 -1.66667 changed
+				3 cove air_temp 2030-11-03T11:30:00 -2.22222 not_checked
+				! line 5 row 4 column 0 "" bad_time: column 1 "Local time": the clocks of America/Anchorage never showed 2030-03-10 02:30:00
+				5 cove air_temp 2030-07-04T20:00:00 20 not_checked
+				lines 6 = 1 header + 0 blank + 0 comments + 5 rows; rows 4 read, 0 without value, 1 set aside; cells 4 read, 0 missing, 1 set aside`,
+		},
 	}
 	for _, tt := range tests {
 		t.Run(tt.file, func(t *testing.T) {

@@ -5,10 +5,11 @@
 //
 // It promises one reading of each text, the same for ever, and an error that
 // says what was found and what would be right. It refuses what could be read in
-// two ways (a decimal comma, a date without its century that the format does
-// not announce) and dates that no calendar has. It knows no zone but fixed
-// offsets: a station's standard time has no daylight saving. Nothing here keeps
-// state, and the way of good input allocates nothing.
+// two ways (a decimal comma or a date without its century that was not announced,
+// a time that a zone's clocks show twice and no rule is given for), dates that no
+// calendar has, and fractions of a second. A zone is a fixed offset, as a station's
+// standard time is, or a named one. Nothing here keeps state, and the way of good
+// input allocates nothing.
 package normal
 
 import (

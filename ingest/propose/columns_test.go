@@ -16,7 +16,7 @@ func TestWords(t *testing.T) {
 		{"Max Temp (°C)", "max temp °c"},
 		{"TMAX", "t max"},
 		{"airtempmaxc", "air temp max c"},
-		{"AirTC_Avg", "air t c avg"},
+		{"AirTC_Mean", "air t c mean"},
 		{"T_DAILY_MEAN", "t daily mean"},
 		{"SUR_TEMP_DAILY_MAX", "sur temp daily max"},
 		{"dewpoint", "dewpoint"},

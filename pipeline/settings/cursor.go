@@ -73,7 +73,7 @@ func (o *object) at(key string) string {
 func (o *object) get(key string) *yaml.Node {
 	o.known = append(o.known, key)
 	v := o.vals[key]
-	if v == nil || v.Kind == yaml.ScalarNode && v.Tag == "!!null" {
+	if v == nil || empty(v) {
 		return nil
 	}
 	if v.Kind == yaml.AliasNode {
@@ -84,7 +84,13 @@ func (o *object) get(key string) *yaml.Node {
 	return v
 }
 
-func (o *object) has(key string) bool { return o.vals[key] != nil }
+// has reports whether a key is given and not empty.
+func (o *object) has(key string) bool {
+	v := o.vals[key]
+	return v != nil && !empty(v)
+}
+
+func empty(v *yaml.Node) bool { return v.Kind == yaml.ScalarNode && v.Tag == "!!null" }
 
 // done reports keys that were not asked for.
 func (o *object) done() {

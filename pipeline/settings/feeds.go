@@ -65,7 +65,7 @@ func (r *reader) feed(o *object, s *Settings, stations map[string]*pipeline.Stat
 		f.Layout.Station = r.stationColumn(r.object(o.get("station"), o.at("station"), o.node))
 	} else {
 		o.known = append(o.known, "station")
-		if c := f.Layout.Station; c.Column+c.FileName+c.Constant == "" && f.Layout.Name != "" {
+		if c := f.Layout.Station; c.Column+c.FileName+c.Preamble+c.Constant == "" && f.Layout.Name != "" {
 			o.missing("station", "say here or in the layout which station a row is of")
 		}
 	}

@@ -13,6 +13,8 @@ func FuzzParse(f *testing.F) {
 	f.Add([]byte(records(`{what: moved, on: 2020-01-01}`, "", goodJoined, "")))
 	f.Add([]byte("a: &a [*a, *a]\nb: [*a, *a]\n"))
 	f.Add([]byte("stations: {table: none.csv}\nfeeds: []\nlayouts: {}\n"))
+	f.Add([]byte(forms(`widths: [4, 5], quote: none, preamble_ends: "^x", data_line: 3`, `columns: [[1, 2], 3], format: epoch, covers: instant`, "preamble: (x)", `{column: [2], when: {3: [a, ""]}, variable: air_temp, unit: degC, scale: 2}`)))
+	f.Add([]byte(forms("", `columns: [[a, b], c], format: x, zone: A/b, ambiguous: later, skipped: shift, covers: instant`, "column: [a, b]", `{column: [c, d], variable: air_temp, unit: K, offset: -1, flag: {column: [e, f], marks: {}}}`)))
 	f.Add([]byte("\xff\xfe"))
 	f.Add([]byte("- 1\n"))
 	region, err := os.ReadFile(filepath.Join("..", "..", "cmd", "thawledger", "region", "settings.yaml"))

@@ -2,7 +2,7 @@ package settings
 
 import (
 	"fmt"
-	"regexp"
+	"maps"
 	"slices"
 	"strconv"
 	"time"
@@ -32,10 +32,10 @@ func (r *reader) readLayouts(s *Settings, o *object) {
 
 func (r *reader) layout(name string, o *object) pipeline.Layout {
 	zero, share := 0.0, 0.2
-	l := pipeline.Layout{
-		Name: name, Delimiter: o.delimiter(), Comment: o.textOr("comment", ""),
-		NamesLine: o.whole("names_line", &zero, 0, 1000),
-	}
+	l := pipeline.Layout{Name: name}
+	o.shape(&l)
+	l.Comment, l.PreambleEnds = o.textOr("comment", ""), o.expression("preamble_ends", 0, "that fits the last line of the preamble, such as ^DATA")
+	l.NamesLine, l.UnitsLine, l.DataLine = o.whole("names_line", &zero, 0, 1000), o.whole("units_line", &zero, 0, 1000), o.whole("data_line", &zero, 0, 1001)
 	if l.Encoding = oneOf(o, "encoding", "utf-8", encodings...); l.Encoding == "utf-8" {
 		l.Encoding = ""
 	}
@@ -71,6 +71,9 @@ func (r *reader) sameSeries(o *object, l pipeline.Layout) {
 	}
 	seen := map[key]int{}
 	for i, v := range l.Values {
+		if len(v.When) > 0 {
+			continue // which rows such a value is of is for checkLayouts
+		}
 		k := key{v.Variable, v.Sensor, v.LevelM}
 		if first, ok := seen[k]; ok {
 			r.fault(o.vals["values"].Content[i], fmt.Sprintf("%s[%d]", o.at("values"), i), "give one of them another sensor or level_m",
@@ -82,14 +85,11 @@ func (r *reader) sameSeries(o *object, l pipeline.Layout) {
 
 // numbersOnly reports columns called by name where the file has no names.
 func (r *reader) numbersOnly(o *object, l pipeline.Layout) {
-	names := slices.Clone(l.Time.Columns)
-	if l.Station.Column != "" {
-		names = append(names, l.Station.Column)
-	}
+	names := slices.Concat(l.Time.Columns, slices.Concat(l.Time.Or...), []string{l.Station.Column}, l.Station.Or)
 	for _, v := range l.Values {
-		names = append(names, v.Column)
+		names = slices.Concat(names, []string{v.Column}, v.Or, slices.Sorted(maps.Keys(v.When)))
 		if v.Flag != nil {
-			names = append(names, v.Flag.Column)
+			names = append(append(names, v.Flag.Column), v.Flag.Or...)
 		}
 	}
 	for _, name := range names {
@@ -100,30 +100,13 @@ func (r *reader) numbersOnly(o *object, l pipeline.Layout) {
 	}
 }
 
-func (o *object) delimiter() string {
-	const right = `write one character, or tab, or space for any run of blanks`
-	text := o.text("delimiter", right)
-	switch {
-	case text == "tab":
-		return "\t"
-	case text == "space", text == "":
-		return text
-	case len(text) != 1 || text == `"` || text == "\n" || text == "\r":
-		o.r.fault(o.vals["delimiter"], o.at("delimiter"), right, "%q will not do", text)
-	}
-	return text
-}
-
 func (r *reader) timeColumns(o *object) pipeline.TimeColumns {
-	t := pipeline.TimeColumns{Columns: o.texts("columns"), Format: o.text("format", "say how the time is written, such as YYYY-MM-DD hh:mm")}
+	t := pipeline.TimeColumns{Format: o.text("format", "say how the time is written, such as YYYY-MM-DD hh:mm")}
+	t.Columns, t.Or = o.columns("columns")
 	if len(t.Columns) == 0 && !o.bad {
 		o.missing("columns", "list the columns that hold the time, by name or number")
 	}
-	const zone = `write station for the station's standard time, or an offset in quotes such as "+00:00"`
-	t.Zone = o.text("zone", zone)
-	if _, ok := parseOffset(t.Zone); t.Zone != "" && t.Zone != "station" && !ok {
-		r.fault(o.vals["zone"], o.at("zone"), zone, "%q will not do", t.Zone)
-	}
+	o.zone(&t)
 	t.Covers = oneOf(o, "covers", "", pipeline.CoversDay, pipeline.CoversInstant, pipeline.CoversEnding, pipeline.CoversBeginning)
 	span := o.duration("span", 0)
 	switch t.Covers {
@@ -150,21 +133,18 @@ func (r *reader) timeColumns(o *object) pipeline.TimeColumns {
 }
 
 func (r *reader) stationColumn(o *object) pipeline.StationColumn {
-	c := pipeline.StationColumn{Column: o.textOr("column", ""), FileName: o.textOr("file_name", ""), Constant: o.textOr("constant", "")}
+	c := pipeline.StationColumn{Constant: o.textOr("constant", "")}
+	c.Column, c.Or = o.column("column", "")
+	const group = `with a group around the station's id, such as ^([A-Z]+)_`
+	c.FileName, c.Preamble = o.expression("file_name", 1, group), o.expression("preamble", 1, group)
 	given := 0
-	for _, text := range []string{c.Column, c.FileName, c.Constant} {
+	for _, text := range []string{c.Column, c.FileName, c.Preamble, c.Constant} {
 		if text != "" {
 			given++
 		}
 	}
 	if given != 1 && !o.bad {
-		r.fault(o.node, o.path, "give exactly one of column, file_name and constant", "%d of them are given", given)
-	}
-	if c.FileName != "" {
-		if re, err := regexp.Compile(c.FileName); err != nil || re.NumSubexp() < 1 {
-			r.fault(o.vals["file_name"], o.at("file_name"), "write a regular expression with a group around the station's id, such as ^([A-Z]+)_",
-				"%q will not do", c.FileName)
-		}
+		r.fault(o.node, o.path, "give exactly one of column, file_name, preamble and constant", "%d of them are given", given)
 	}
 	if n := o.get("map"); n != nil {
 		m := r.object(n, o.at("map"), n)
@@ -180,15 +160,18 @@ func (r *reader) stationColumn(o *object) pipeline.StationColumn {
 func (r *reader) valueColumn(o *object, missing []string) pipeline.ValueColumn {
 	level := 1.5
 	v := pipeline.ValueColumn{
-		Column:   o.text("column", "write the column's name, or its number from 1"),
+		When:     o.when(),
 		Variable: oneOf(o, "variable", "", "air_temp_mean", "air_temp_max", "air_temp_min", "air_temp"),
-		Unit:     oneOf(o, "unit", "", pipeline.TempUnits...),
-		Sensor:   o.textOr("sensor", "air"), LevelM: o.number("level_m", &level, -500, 500),
+		Unit:     oneOf(o, "unit", "", pipeline.TempUnits...), UnitText: o.textOr("unit_text", ""),
+		Sensor: o.textOr("sensor", "air"), LevelM: o.number("level_m", &level, -500, 500),
 		Missing: slices.Concat(missing, o.texts("missing")),
 	}
+	v.Column, v.Or = o.column("column", columnRight)
+	v.Scale, v.Offset = o.scale()
 	if n := o.get("flag"); n != nil {
 		f := r.object(n, o.at("flag"), n)
-		v.Flag = &pipeline.FlagColumn{Column: f.text("column", "write the column's name, or its number from 1"), Empty: quality(f, "empty", pipeline.QualityNotChecked)}
+		v.Flag = &pipeline.FlagColumn{Empty: quality(f, "empty", pipeline.QualityNotChecked)}
+		v.Flag.Column, v.Flag.Or = f.column("column", columnRight)
 		m := r.object(f.get("marks"), f.at("marks"), n)
 		v.Flag.Marks = map[string]pipeline.Quality{}
 		for key := range m.vals {

@@ -6,9 +6,7 @@ import (
 	"encoding/hex"
 	"fmt"
 	"io"
-	"maps"
 	"net/url"
-	"slices"
 	"strconv"
 	"time"
 
@@ -105,14 +103,17 @@ func (t *tree) list(key string, n int, f func(i int, c *tree)) {
 }
 
 func (t *tree) texts(key string, list []string) {
-	if len(list) == 0 {
-		return
+	if len(list) > 0 {
+		t.key(key, textNodes(list))
 	}
+}
+
+func textNodes(list []string) *yaml.Node {
 	l := &yaml.Node{Kind: yaml.SequenceNode, Style: yaml.FlowStyle}
 	for _, v := range list {
 		l.Content = append(l.Content, &yaml.Node{Kind: yaml.ScalarNode, Value: v, Style: yaml.DoubleQuotedStyle})
 	}
-	t.key(key, l)
+	return l
 }
 
 func (s *Settings) write(mark bool) []byte {
@@ -234,63 +235,6 @@ func offsetText(d time.Duration) string {
 		sign, d = "-", -d
 	}
 	return fmt.Sprintf("%s%02d:%02d", sign, int(d.Hours()), int(d.Minutes())%60)
-}
-
-func writeLayout(t *tree, l *pipeline.Layout) {
-	delimiter := l.Delimiter
-	if delimiter == "\t" {
-		delimiter = "tab"
-	}
-	t.text("delimiter", delimiter)
-	t.word("encoding", l.Encoding)
-	t.word("comment", l.Comment)
-	t.number("names_line", float64(l.NamesLine))
-	t.sub("time", func(t *tree) {
-		t.texts("columns", l.Time.Columns)
-		t.text("format", l.Time.Format)
-		t.text("zone", l.Time.Zone)
-		t.text("covers", string(l.Time.Covers))
-		if l.Time.Covers == pipeline.CoversEnding || l.Time.Covers == pipeline.CoversBeginning {
-			t.duration("span", time.Duration(l.Time.SpanS)*time.Second)
-		}
-	})
-	if c := l.Station; c.Column+c.FileName+c.Constant != "" {
-		t.sub("station", func(t *tree) { writeStationColumn(t, &c) })
-	}
-	t.list("values", len(l.Values), func(i int, t *tree) {
-		v := &l.Values[i]
-		t.text("column", v.Column)
-		t.text("variable", v.Variable)
-		t.text("unit", string(v.Unit))
-		t.text("sensor", v.Sensor)
-		t.number("level_m", v.LevelM)
-		t.texts("missing", v.Missing)
-		if v.Flag != nil {
-			t.sub("flag", func(t *tree) {
-				t.text("column", v.Flag.Column)
-				t.text("empty", v.Flag.Empty.String())
-				t.sub("marks", func(t *tree) {
-					for _, k := range slices.Sorted(maps.Keys(v.Flag.Marks)) {
-						t.text(k, v.Flag.Marks[k].String())
-					}
-				})
-			})
-		}
-	})
-	t.number("max_set_aside", l.MaxSetAside)
-}
-
-func writeStationColumn(t *tree, c *pipeline.StationColumn) {
-	t.word("column", c.Column)
-	t.word("file_name", c.FileName)
-	t.word("constant", c.Constant)
-	if len(c.Map) > 0 {
-		t.sub("map", func(t *tree) {
-			for _, k := range slices.Sorted(maps.Keys(c.Map)) {
-				t.text(k, c.Map[k])
-			}
-		})
-	}
 }
 
 func writeFeed(t *tree, f *pipeline.Feed) {
