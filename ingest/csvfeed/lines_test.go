@@ -114,7 +114,7 @@ func (e *endless) Read(b []byte) (int, error) {
 }
 
 func TestLongLineInBoundedMemory(t *testing.T) {
-	l := newLines(&endless{n: 64 * MaxLine})
+	l := newLines(&endless{n: 1024 * MaxLine}) // 1 GiB
 	line, long, err := l.next(t.Context())
 	if len(line) != pipeline.MaxRaw || !long || err != nil {
 		t.Fatalf("got %d bytes, %v, %v", len(line), long, err)
