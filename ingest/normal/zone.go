@@ -22,8 +22,13 @@ type Zone struct {
 type Offset struct{ fromS, toS, offsetS int64 }
 
 // reachS is more than any two offsets of a zone differ, and more than any offset
-// from UTC: the tz database has -15:56 to +15:13 (from memory).
+// from UTC: the tz database has -15:56 to +15:13 (from memory). No zone changes
+// its offset twice within twice as long.
 const reachS = 36 * 3600
+
+// keptS is for how long an offset is taken to hold once it is known to hold before
+// and after.
+const keptS = 86400
 
 // LoadZone makes a zone such as America/Edmonton ready.
 func LoadZone(name string, ambiguous pipeline.Ambiguous, skipped pipeline.Skipped) (*Zone, error) {
@@ -55,55 +60,41 @@ func (z *Zone) UnixS(c Civil, last *Offset) (s int64, resolved bool, err error) 
 	if last.fromS <= local && local < last.toS {
 		return local - last.offsetS, false, nil
 	}
-	var first, latest int64
-	found, beforeS := 0, int64(0)
-	for at := local - reachS; ; {
-		t := time.Unix(at, 0).In(z.loc)
-		_, offset := t.Zone()
-		fromS, toS := bounds(t)
-		u := local - int64(offset)
-		if fromS <= u && u < toS {
-			if found++; found == 1 {
-				first = u
-			}
-			latest = u
-			*last = Offset{fromS + reachS + int64(offset), toS - reachS + int64(offset), int64(offset)}
+	before, after := z.offset(local-reachS), z.offset(local+reachS)
+	if before == after {
+		if z.offset(local+reachS+keptS) == before {
+			*last = Offset{local, local + keptS, before}
 		}
-		if u >= toS {
-			beforeS = u
-		}
-		if toS > local+reachS {
-			break
-		}
-		at = toS
+		return local - before, false, nil
+	}
+	first, latest := local-before, local-after
+	showsFirst, showsLatest := z.offset(first) == before, z.offset(latest) == after
+	if first > latest {
+		first, latest, showsFirst, showsLatest = latest, first, showsLatest, showsFirst
 	}
 	switch {
-	case found == 1:
+	case showsFirst && !showsLatest:
 		return first, false, nil
-	case found > 1 && z.ambiguous == pipeline.AmbiguousEarlier:
+	case showsLatest && !showsFirst:
+		return latest, false, nil
+	case showsFirst && z.ambiguous == pipeline.AmbiguousEarlier:
 		return first, true, nil
-	case found > 1 && z.ambiguous == pipeline.AmbiguousLater:
+	case showsFirst && z.ambiguous == pipeline.AmbiguousLater:
 		return latest, true, nil
-	case found > 1:
+	case showsFirst:
 		return 0, false, fmt.Errorf("the clocks of %s showed %s twice", z.loc, civilText(local))
 	case z.skipped == pipeline.SkippedShift:
-		return beforeS, true, nil
+		return local - before, true, nil
 	}
 	return 0, false, fmt.Errorf("the clocks of %s never showed %s", z.loc, civilText(local))
 }
 
-// bounds returns the first second of the spell of one offset that t is in, and
-// the first after it.
-func bounds(t time.Time) (fromS, toS int64) {
-	start, end := t.ZoneBounds()
-	fromS, toS = -1<<60, 1<<60
-	if !start.IsZero() {
-		fromS = start.Unix()
-	}
-	if !end.IsZero() {
-		toS = end.Unix()
-	}
-	return fromS, toS
+// offset is the zone's offset from UTC at an instant. Package time also has the
+// bounds of an offset's spell, but gets them wrong around the ends of years to
+// come (Go 1.26).
+func (z *Zone) offset(s int64) int64 {
+	_, offset := time.Unix(s, 0).In(z.loc).Zone()
+	return int64(offset)
 }
 
 func civilText(s int64) string { return time.Unix(s, 0).UTC().Format("2006-01-02 15:04:05") }
