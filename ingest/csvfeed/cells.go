@@ -167,5 +167,5 @@ func skipBlanks(line []byte, i int) int {
 // blank reports whether a line holds blanks only. A blank that delimits is a cell's.
 func (c *cells) blank(line []byte) bool {
 	rest := normal.Trim(line)
-	return len(rest) == 0 && (c.blanks || c.widths != nil || bytes.IndexByte(line, c.delimiter) < 0)
+	return len(rest) == 0 && (c.blanks || bytes.IndexByte(line, c.delimiter) < 0)
 }

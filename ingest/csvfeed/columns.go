@@ -53,9 +53,6 @@ func (p *Plan) resolve(names []string, line int64) (*columns, error) {
 		c.when = append(c.when, when)
 	}
 	c.need = r.most + 1
-	if p.widths != nil {
-		c.width = len(p.widths)
-	}
 	if len(r.faults) == 0 {
 		return c, nil
 	}

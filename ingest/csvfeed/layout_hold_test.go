@@ -38,7 +38,7 @@ func TestDecodeHoldsForms(t *testing.T) {
 		{"preamble without end", preamble, "time,temp\n2031-07-20 13:00,5\n", header("2") + `the file ends after 2 lines, and none of them ends the preamble: none fits "^DATA"`},
 		{"preamble longer than any", preamble, strings.Repeat("x\n", 1000) + "DATA\ntime,temp\n", header("999") + `line 1000: none of the first 1000 lines ends the preamble: none fits "^DATA"`},
 		{"no names after the preamble", func(l *pipeline.Layout) { preamble(l); l.NamesLine = 2 }, "x\nDATA\nx\n", header("3") + "the file ends after 3 lines, and the column names are due on line 4"},
-		{"end that is far into a line", preamble, strings.Repeat("x", 5000) + "DATA\n", header("1") + `the file ends after 1 lines, and none of them ends the preamble: none fits "^DATA"`},
+		{"end that is far into a line", func(l *pipeline.Layout) { l.PreambleEnds = "DATA" }, strings.Repeat("x", 5000) + "DATA\n", header("1") + `the file ends after 1 lines, and none of them ends the preamble: none fits "DATA"`},
 
 		{"no station in the header", func(l *pipeline.Layout) {
 			l.NamesLine, l.Station = 3, pipeline.StationColumn{Preamble: `^Id (\w*)`, Clocks: l.Station.Clocks}
@@ -47,6 +47,9 @@ func TestDecodeHoldsForms(t *testing.T) {
 			preamble(l)
 			l.Station = pipeline.StationColumn{Preamble: `(temp)`, Clocks: l.Station.Clocks}
 		}, "DATA\ntime,temp\n", header("1") + `line 2: no line of the header says the station: none fits "(temp)"`},
+		{"station far into a line, and after the names", func(l *pipeline.Layout) {
+			l.NamesLine, l.DataLine, l.Station = 2, 4, pipeline.StationColumn{Preamble: `Id (\w+)`, Clocks: l.Station.Clocks}
+		}, strings.Repeat("x", 5000) + "Id north\ntime,temp\nId north\n2031-07-20 13:00,5\n", header("2") + `line 3: no line of the header says the station: none fits "Id (\\w+)"`},
 		{"no station in a preamble without names", func(l *pipeline.Layout) {
 			preamble(l)
 			l.NamesLine, l.Time.Columns, l.Values[0].Column = 0, []string{"1"}, "2"

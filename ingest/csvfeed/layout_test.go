@@ -100,11 +100,11 @@ func TestDecodeForms(t *testing.T) {
 
 		{
 			"long form", long,
-			"time,what,unit,value\n2031-07-20 13:00,TA,C,5\n2031-07-20 13:00,RH,%,81\n2031-07-20 14:00,TAIR,F,41\n2031-07-20 14:00,TB,?,6\nnever,RH,%,x\n2031-07-20 15:00,TA,K,280\n",
+			"time,what,unit,value\n2031-07-20 13:00,TA,C,5\n2031-07-20 13:00,RH,%,81\n2031-07-20 14:00,TAIR,F,41\n2031-07-20 14:00,TB,?,6\nnever,RH,%,x\n2031-07-20 15:00,TA,K,280\n2031-07-20 13:00,dew point,C,4\n",
 			`1 north air_temp 2031-07-20T22:00:00 5 not_checked
 				3 north air_temp 2031-07-20T23:00:00 5 not_checked
 				4 north air_temp 2031-07-20T23:00:00 6 not_checked
-				lines 7 = 1 header + 0 blank + 0 comments + 6 rows; rows 3 read, 3 without value, 0 set aside; cells 3 read, 0 missing, 0 set aside`,
+				lines 8 = 1 header + 0 blank + 0 comments + 7 rows; rows 3 read, 4 without value, 0 set aside; cells 3 read, 0 missing, 0 set aside`,
 		},
 		{
 			"long form, what is wrong", func(l *pipeline.Layout) { long(l); l.Values[2].Missing = []string{"-99"} },

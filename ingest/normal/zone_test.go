@@ -159,6 +159,32 @@ func TestZoneAgainstStandardLibrary(t *testing.T) {
 	}
 }
 
+// TestZoneAtTheEndsOfYears: around New Year of years to come package time has
+// bounds of an offset's spell that end before they begin (Go 1.26); its offsets
+// are right, and no clock is changed on those days.
+func TestZoneAtTheEndsOfYears(t *testing.T) {
+	for _, name := range []string{"Pacific/Auckland", "Australia/Lord_Howe", "America/Edmonton", "Antarctica/Troll"} {
+		loc, err := time.LoadLocation(name)
+		if err != nil {
+			t.Fatal(err)
+		}
+		z, err := normal.LoadZone(name, pipeline.AmbiguousSetAside, pipeline.SkippedSetAside)
+		if err != nil {
+			t.Fatal(err)
+		}
+		for year := 2036; year < 2200; year++ {
+			for hour := range 96 {
+				d := time.Date(year, 12, 30, hour, 0, 0, 0, time.UTC)
+				want := time.Date(year, 12, 30, hour, 0, 0, 0, loc).Unix()
+				c := normal.Civil{Day: pipeline.Day(d.Unix() / 86400), SecondS: int32(d.Unix() % 86400)}
+				if got, resolved, err := z.UnixS(c, &normal.Offset{}); got != want || resolved || err != nil {
+					t.Fatalf("%s, %s: got %d, %v, %v; want %d", name, d, got, resolved, err, want)
+				}
+			}
+		}
+	}
+}
+
 func TestZoneAllocatesNothing(t *testing.T) {
 	z, err := normal.LoadZone("Pacific/Auckland", pipeline.AmbiguousEarlier, pipeline.SkippedShift)
 	if err != nil {

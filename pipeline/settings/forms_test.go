@@ -84,7 +84,7 @@ func TestForms(t *testing.T) {
 			if err != nil {
 				t.Fatalf("not read again: %v\n%s", err, s.Text())
 			}
-			if diff := cmp.Diff(s.Feeds[0].Layout, again.Feeds[0].Layout); again.Hash != s.Hash || diff != "" {
+			if diff := cmp.Diff(s.Layouts, again.Layouts) + cmp.Diff(s.Feeds, again.Feeds); again.Hash != s.Hash || diff != "" {
 				t.Errorf("shown and read again (-first +second):\n%s\n%s", diff, s.Text())
 			}
 		})
@@ -117,6 +117,7 @@ func TestFormsRefused(t *testing.T) {
 		{"column of the time that is an empty list", times("zone: station, columns: [a, []]"), "layouts.l.time.columns[1]: a list is no column"},
 		{"column of the time in a list in a list", times("zone: station, columns: [[a, [b]]]"), "layouts.l.time.columns[0][1]: a list is not a single value"},
 		{"other name without names", forms(`delimiter: ","`, `columns: [1], format: "YYYY-MM-DD hh:mm", zone: station, covers: instant`, "", "{column: [2, temp], variable: air_temp, unit: degC}"), `column "temp" is called by name`},
+		{"other name of the time without names", forms(`delimiter: ","`, `columns: [[1, day]], format: "YYYY-MM-DD hh:mm", zone: station, covers: instant`, "", "{column: 2, variable: air_temp, unit: degC}"), `column "day" is called by name`},
 		{"condition by name without names", forms(`delimiter: ","`, `columns: [1], format: "YYYY-MM-DD hh:mm", zone: station, covers: instant`, "", "{column: 2, when: {what: T}, variable: air_temp, unit: degC}"), `column "what" is called by name`},
 		{"condition without a text", value("when: {what: }"), "layouts.l.values[0].when.what: it is missing; write a text"},
 		{"condition without texts", value("when: {what: []}"), "layouts.l.values[0].when.what: it is missing; write a text"},
