@@ -20,6 +20,9 @@ type reader struct {
 }
 
 func (r *reader) fault(n *yaml.Node, path, right, wrong string, args ...any) {
+	if n == nil { // about something that the file does not have
+		n = &yaml.Node{Line: 1, Column: 1}
+	}
 	r.faults = append(r.faults, Fault{r.file, n.Line, n.Column, path, fmt.Sprintf(wrong, args...), right})
 }
 

@@ -1,6 +1,7 @@
 package settings
 
 import (
+	"cmp"
 	"fmt"
 	"maps"
 	"slices"
@@ -115,7 +116,7 @@ func (r *reader) timeColumns(o *object) pipeline.TimeColumns {
 			r.fault(o.keys["span"], o.at("span"), "leave it out", "a day is 24 h long")
 		}
 		if t.Zone != "station" && t.Zone != "" {
-			r.fault(o.vals["zone"], o.at("zone"), "write station", "a day is the station's day")
+			r.fault(cmp.Or(o.vals["zone"], o.node), o.at("zone"), "write station", "a day is the station's day")
 		}
 		span = 24 * time.Hour
 	case pipeline.CoversInstant:
