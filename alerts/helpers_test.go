@@ -204,12 +204,14 @@ func (w *world) set(t *testing.T, stationID string, kind pipeline.Kind, startDat
 	if kind == pipeline.Freeze {
 		other = "thaw"
 	}
-	w.exec(t, `delete from thaw.air_index_daily where station = $1 and `+k+`_season = $2`, stationID, key.start.Time())
+	w.exec(t, `delete from thaw.index_blocks where station = $1 and `+k+`_season = $2`, stationID, key.start.Time())
 	for _, x := range days {
-		w.exec(t, `insert into thaw.air_index_daily (station, day, `+k+`_season, `+other+`_season,
+		w.exec(t, `insert into thaw.index_blocks (station, month, first_day, last_day, `+k+`_season, `+other+`_season,
+				thaw_running_c_days, freeze_running_c_days,
 				`+k+`_curve_low_c_days, `+k+`_curve_high_c_days, `+k+`_sum_low_c_days, `+k+`_sum_high_c_days,
-				`+other+`_curve_low_c_days, `+other+`_curve_high_c_days, `+other+`_sum_low_c_days, `+other+`_sum_high_c_days)
-			values ($1, $2, $3, $2, $4, $5, $6, $7, 0, 0, 0, 0)`,
+				`+other+`_curve_low_c_days, `+other+`_sum_low_c_days)
+			values ($1, date_trunc('month', $2::date), $2, $2, $3, $2, array[null::float8], array[null::float8], array[$4::float8], array[$5::float8],
+				array[$6::float8], array[$7::float8], array[0], array[0])`,
 			stationID, x.day.Time(), key.start.Time(), x.low, x.high, x.sumLow, x.sumHigh)
 	}
 	year, _, _ := key.start.Date()

@@ -116,7 +116,7 @@ func TestWhichSeasonsAreJudged(t *testing.T) {
 		t.Error("a season from the day of the change on was not judged again")
 	}
 	w.exec(t, `delete from thaw.air_index_season where season_start = '2031-01-15'`)
-	w.exec(t, `delete from thaw.air_index_daily where thaw_season = '2031-01-15'`)
+	w.exec(t, `delete from thaw.index_blocks where thaw_season = '2031-01-15'`)
 	w.exec(t, `insert into thaw.changes (station, from_day) values ('FELL', '2031-01-14')`)
 	w.pass(t)
 	same(t, "standings", w.Rows(t, `select season from thaw.standings order by 1`), []string{"(2029)", "(2030)"})

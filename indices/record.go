@@ -149,8 +149,8 @@ func write(ctx context.Context, t *store.Take, st *pipeline.Station, stored []st
 			rows = append(rows, toRow(&complete[i]))
 		}
 	}
-	gone, fresh, changed := differences(stored, rows)
-	if err := t.WriteDays(ctx, gone, fresh); err != nil {
+	differing, changed := differences(stored, rows)
+	if err := t.WriteDays(ctx, rows, differing); err != nil {
 		return err
 	}
 	if len(rows) == 0 {
@@ -193,43 +193,42 @@ func write(ctx context.Context, t *store.Take, st *pipeline.Station, stored []st
 	return t.AddChange(ctx, from)
 }
 
-// differences compares the stored days with those that should be: gone are the
-// days whose rows have to go, fresh the rows to be written, changed the days
-// whose indices have to be worked out again because their means, or bounds, are
-// not what they were. All are sorted.
-func differences(stored, rows []store.DayRow) (gone []pipeline.Day, fresh []store.DayRow, changed []pipeline.Day) {
+// differences compares the stored days with those that should be: differing are
+// the days whose rows are not what they should be, changed those of them whose
+// indices have to be worked out again because their means, or bounds, are not
+// what they were. Both are sorted.
+func differences(stored, rows []store.DayRow) (differing, changed []pipeline.Day) {
+	both := func(d pipeline.Day) { differing, changed = append(differing, d), append(changed, d) }
 	i := 0
 	for k := range rows {
 		n := &rows[k]
-		for i < len(stored) && stored[i].Day < n.Day {
-			gone, changed = append(gone, stored[i].Day), append(changed, stored[i].Day)
-			i++
+		for ; i < len(stored) && stored[i].Day < n.Day; i++ {
+			both(stored[i].Day)
 		}
 		if i == len(stored) || stored[i].Day > n.Day {
-			fresh, changed = append(fresh, *n), append(changed, n.Day)
+			both(n.Day)
 			continue
 		}
 		o := &stored[i]
 		i++
 		if o.LowC != n.LowC || o.HighC != n.HighC || o.Origin != n.Origin {
-			changed = append(changed, n.Day)
-		} else if same(o, n) {
-			continue
+			both(n.Day)
+		} else if !same(o, n) {
+			differing = append(differing, n.Day)
 		}
-		gone, fresh = append(gone, n.Day), append(fresh, *n)
 	}
 	for ; i < len(stored); i++ {
-		gone, changed = append(gone, stored[i].Day), append(changed, stored[i].Day)
+		both(stored[i].Day)
 	}
-	return gone, fresh, changed
+	return differing, changed
 }
 
 // same says whether two rows of one day agree in everything.
 func same(a, b *store.DayRow) bool {
 	equal := func(x, y *float64) bool { return x == nil && y == nil || x != nil && y != nil && *x == *y }
 	x, y := *a, *b
-	x.MeanC, x.MaxC, x.MinC, y.MeanC, y.MaxC, y.MinC = nil, nil, nil, nil, nil, nil
-	return x == y && equal(a.MeanC, b.MeanC) && equal(a.MaxC, b.MaxC) && equal(a.MinC, b.MinC)
+	x.MeanC, x.MaxC, x.MinC, x.ErrorC, y.MeanC, y.MaxC, y.MinC, y.ErrorC = nil, nil, nil, nil, nil, nil, nil, nil
+	return x == y && equal(a.MeanC, b.MeanC) && equal(a.MaxC, b.MaxC) && equal(a.MinC, b.MinC) && equal(a.ErrorC, b.ErrorC)
 }
 
 func fromRow(d *store.DayRow) daily.Value {

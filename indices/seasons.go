@@ -79,6 +79,7 @@ func (r *record) writeIndices(ctx context.Context, t *store.Take, stretches []st
 	seasons := map[pipeline.Kind]map[pipeline.Day]degreeday.Season{pipeline.Thaw: {}, pipeline.Freeze: {}}
 	var rows []store.SeasonRow
 	for _, s := range stretches {
+		s.first = store.BlockStart(s.first, r.begin, r.window(pipeline.Thaw, s.first).First, r.window(pipeline.Freeze, s.first).First)
 		days := make([]store.IndexRow, 0, s.last-s.first+1)
 		for d := s.first; d <= s.last; d++ {
 			row := store.IndexRow{Day: d}

@@ -157,36 +157,6 @@ func (j *Judging) Seasons(ctx context.Context, kind pipeline.Kind, from pipeline
 	return out, nil
 }
 
-// IndexDay is a day's air indices of one kind to date.
-type IndexDay struct {
-	Day                 pipeline.Day
-	Season              pipeline.Day
-	CurveLow, CurveHigh float64
-	SumLow, SumHigh     float64
-}
-
-// IndexDays returns the station's indices of a kind from a day on, in order.
-func (j *Judging) IndexDays(ctx context.Context, kind pipeline.Kind, from pipeline.Day) ([]IndexDay, error) {
-	k := string(kind)
-	rows, err := j.tx.Query(ctx, `select day, `+k+`_season, `+k+`_curve_low_c_days, `+k+`_curve_high_c_days, `+k+`_sum_low_c_days, `+k+`_sum_high_c_days
-		from thaw.air_index_daily where station = $1 and day >= $2 order by day`, j.station, from.Time())
-	if err != nil {
-		return nil, fmt.Errorf("read indices of %s: %w", j.station, err)
-	}
-	var out []IndexDay
-	var d IndexDay
-	var day, season time.Time
-	_, err = pgx.ForEachRow(rows, []any{&day, &season, &d.CurveLow, &d.CurveHigh, &d.SumLow, &d.SumHigh}, func() error {
-		d.Day, d.Season = dayOf(day), dayOf(season)
-		out = append(out, d)
-		return nil
-	})
-	if err != nil {
-		return nil, fmt.Errorf("read indices of %s: %w", j.station, err)
-	}
-	return out, nil
-}
-
 // StandingRow is a row of standings.
 type StandingRow struct {
 	Design       *Design
