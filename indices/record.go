@@ -6,7 +6,6 @@ import (
 	"time"
 
 	"thawledger/indices/daily"
-	"thawledger/indices/degreeday"
 	"thawledger/pipeline"
 	"thawledger/pipeline/store"
 )
@@ -135,13 +134,12 @@ func merge(stored []store.DayRow, made []daily.Value) []daily.Value {
 // rules may have.
 func write(ctx context.Context, t *store.Take, st *pipeline.Station, stored []store.DayRow, values []daily.Value, all bool) error {
 	complete, extremes := daily.Complete(values, st.FillDays)
-	r := &record{st: st}
 	var rows []store.DayRow
 	if len(complete) > 0 {
-		r.begin = complete[0].Day
-		start := min(r.window(pipeline.Thaw, r.begin).First, r.window(pipeline.Freeze, r.begin).First)
-		rows = make([]store.DayRow, 0, int(r.begin-start)+len(complete))
-		for d := start; d < r.begin; d++ {
+		begin := complete[0].Day
+		start := firstSeasonStart(st, begin)
+		rows = make([]store.DayRow, 0, int(begin-start)+len(complete))
+		for d := start; d < begin; d++ {
 			low, high := extremes.Bounds(d)
 			rows = append(rows, store.DayRow{Day: d, LowC: low, HighC: high, Quality: pipeline.QualityMissing, Rule: st.Mean})
 		}
@@ -153,6 +151,13 @@ func write(ctx context.Context, t *store.Take, st *pipeline.Station, stored []st
 	if err := t.WriteDays(ctx, rows, differing); err != nil {
 		return err
 	}
+	return index(ctx, t, st, stored, rows, changed, all)
+}
+
+// index works the indices of changed days out, or with all those of the whole
+// record, and leaves a line in changes. stored are the days whose indices the
+// tables hold, rows those of which they should.
+func index(ctx context.Context, t *store.Take, st *pipeline.Station, stored, rows []store.DayRow, changed []pipeline.Day, all bool) error {
 	if len(rows) == 0 {
 		// Nothing usable is left, or came yet.
 		if len(stored) == 0 {
@@ -163,14 +168,7 @@ func write(ctx context.Context, t *store.Take, st *pipeline.Station, stored []st
 		}
 		return t.AddChange(ctx, stored[0].Day)
 	}
-	r.means = make([]degreeday.DayMean, len(rows))
-	for i := range rows {
-		d := &rows[i]
-		r.means[i] = degreeday.DayMean{Day: d.Day, Origin: d.Origin, LowC: d.LowC, HighC: d.HighC}
-		if d.MeanC != nil {
-			r.means[i].MeanC = *d.MeanC
-		}
-	}
+	r := newRecord(st, rows)
 	stretches := r.touched(changed)
 	if all {
 		stretches = []stretch{{r.begin, r.end()}}

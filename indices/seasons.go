@@ -27,6 +27,30 @@ func (r *record) end() pipeline.Day   { return r.means[len(r.means)-1].Day }
 
 var kinds = []pipeline.Kind{pipeline.Thaw, pipeline.Freeze}
 
+// newRecord takes a station's daily values, every day once in order, at least
+// one of them observed.
+func newRecord(st *pipeline.Station, rows []store.DayRow) *record {
+	r := &record{st: st, means: make([]degreeday.DayMean, len(rows))}
+	began := false
+	for i := range rows {
+		d := &rows[i]
+		r.means[i] = degreeday.DayMean{Day: d.Day, Origin: d.Origin, LowC: d.LowC, HighC: d.HighC}
+		if d.MeanC != nil {
+			r.means[i].MeanC = *d.MeanC
+		}
+		if !began && d.Origin == pipeline.Observed {
+			r.begin, began = d.Day, true
+		}
+	}
+	return r
+}
+
+// firstSeasonStart returns the start of the earlier of the two seasons that a
+// day is in.
+func firstSeasonStart(st *pipeline.Station, d pipeline.Day) pipeline.Day {
+	return min(degreeday.WindowAt(st.ThawYear, d).First, degreeday.WindowAt(st.FreezeYear, d).First)
+}
+
 func (r *record) window(kind pipeline.Kind, d pipeline.Day) degreeday.Window {
 	if kind == pipeline.Freeze {
 		return degreeday.WindowAt(r.st.FreezeYear, d)
@@ -34,11 +58,11 @@ func (r *record) window(kind pipeline.Kind, d pipeline.Day) degreeday.Window {
 	return degreeday.WindowAt(r.st.ThawYear, d)
 }
 
-// build works the season of a kind out that a day, not before begin, is in.
-func (r *record) build(kind pipeline.Kind, d pipeline.Day) degreeday.Season {
-	w := r.window(kind, d)
+// build works the season of a kind in a window out; the record has a day of it.
+func (r *record) build(kind pipeline.Kind, w degreeday.Window) *degreeday.Season {
 	last := min(w.Last, r.end())
-	return degreeday.Build(kind, w, w.Label(), r.st.BaseC, r.means[w.First-r.first():last-r.first()+1], r.end())
+	s := degreeday.Build(kind, w, w.Label(), r.st.BaseC, r.means[w.First-r.first():last-r.first()+1], r.end())
+	return &s
 }
 
 // touched returns the days whose indices follow from changed days: in every
@@ -76,28 +100,31 @@ func (r *record) touched(changed []pipeline.Day) []stretch {
 // writeIndices works the indices of the given stretches out and writes them,
 // with the seasons that they are in.
 func (r *record) writeIndices(ctx context.Context, t *store.Take, stretches []stretch) error {
-	seasons := map[pipeline.Kind]map[pipeline.Day]degreeday.Season{pipeline.Thaw: {}, pipeline.Freeze: {}}
+	built := map[pipeline.Kind]map[pipeline.Day]*degreeday.Season{pipeline.Thaw: {}, pipeline.Freeze: {}}
 	var rows []store.SeasonRow
+	season := func(kind pipeline.Kind, d pipeline.Day) *degreeday.Season {
+		w := r.window(kind, d)
+		s := built[kind][w.First]
+		if s == nil {
+			s = r.build(kind, w)
+			built[kind][w.First] = s
+			rows = append(rows, r.seasonRows(s)...)
+		}
+		return s
+	}
 	for _, s := range stretches {
-		s.first = store.BlockStart(s.first, r.begin, r.window(pipeline.Thaw, s.first).First, r.window(pipeline.Freeze, s.first).First)
-		days := make([]store.IndexRow, 0, s.last-s.first+1)
-		for d := s.first; d <= s.last; d++ {
-			row := store.IndexRow{Day: d}
-			for _, kind := range kinds {
-				start := r.window(kind, d).First
-				season, ok := seasons[kind][start]
-				if !ok {
-					season = r.build(kind, d)
-					seasons[kind][start] = season
-					rows = append(rows, r.seasonRows(&season)...)
-				}
-				into := &row.Thaw
-				if kind == pipeline.Freeze {
-					into = &row.Freeze
-				}
-				*into = indicesOf(start, season.Days[d-start])
+		thaw, freeze := season(pipeline.Thaw, s.first), season(pipeline.Freeze, s.first)
+		s.first = store.BlockStart(s.first, r.begin, thaw.Window.First, freeze.Window.First)
+		days := make([]store.IndexRow, s.last-s.first+1)
+		for i := range days {
+			d := s.first + pipeline.Day(i)
+			if d > thaw.Window.Last {
+				thaw = season(pipeline.Thaw, d)
 			}
-			days = append(days, row)
+			if d > freeze.Window.Last {
+				freeze = season(pipeline.Freeze, d)
+			}
+			days[i] = store.IndexRow{Day: d, Thaw: indicesOf(thaw, d), Freeze: indicesOf(freeze, d)}
 		}
 		if err := t.WriteIndexDays(ctx, days); err != nil {
 			return err
@@ -106,8 +133,9 @@ func (r *record) writeIndices(ctx context.Context, t *store.Take, stretches []st
 	return t.WriteSeasons(ctx, rows)
 }
 
-func indicesOf(season pipeline.Day, x degreeday.DayIndex) store.Indices {
-	out := store.Indices{Season: season, CurveLow: x.CurveToDate.Low, CurveHigh: x.CurveToDate.High, SumLow: x.Sum.Low, SumHigh: x.Sum.High}
+func indicesOf(s *degreeday.Season, d pipeline.Day) store.Indices {
+	x := &s.Days[d-s.Window.First]
+	out := store.Indices{Season: s.Window.First, CurveLow: x.CurveToDate.Low, CurveHigh: x.CurveToDate.High, SumLow: x.Sum.Low, SumHigh: x.Sum.High}
 	if x.Running.Known() {
 		out.RunningC = &x.Running.Low
 	}

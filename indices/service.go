@@ -179,17 +179,38 @@ func (s *Service) chores(intake, work context.Context) {
 	}
 }
 
+// recomputeMarked makes the records that are marked anew, as many at a time as
+// there are workers.
 func (s *Service) recomputeMarked(intake, work context.Context) error {
-	stations, err := s.DB.Recomputes(work)
-	failed := []error{err}
-	for _, station := range stations {
-		if intake.Err() != nil {
-			break
+	var failed []error
+	for _, chore := range []struct {
+		due  func(context.Context) ([]string, error)
+		make func(context.Context, string) error
+	}{{s.DB.Recomputes, s.Recompute}, {s.DB.Reindexes, s.Reindex}} {
+		stations, err := chore.due(work)
+		failed = append(failed, err)
+		errs := make([]error, len(stations))
+		var workers sync.WaitGroup
+		free := make(chan struct{}, max(1, s.Workers))
+		for i, station := range stations {
+			if intake.Err() != nil {
+				break
+			}
+			free <- struct{}{}
+			workers.Go(func() {
+				defer func() { <-free }()
+				errs[i] = chore.make(work, station)
+			})
 		}
-		failed = append(failed, s.Recompute(work, station))
+		workers.Wait()
+		failed = append(failed, errs...)
 	}
 	return errors.Join(failed...)
 }
+
+// MakeMarked makes the records anew that are marked to be, as Run does once a
+// second.
+func (s *Service) MakeMarked(ctx context.Context) error { return s.recomputeMarked(ctx, ctx) }
 
 func (s *Service) withdraw(intake, work context.Context) error {
 	due, err := s.DB.Withdrawals(work)

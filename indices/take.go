@@ -75,6 +75,33 @@ func (s *Service) Recompute(ctx context.Context, station string) error {
 	return s.Nudge()
 }
 
+// Reindex fills a station's gaps and works its indices out anew, from the daily
+// values that it has, and takes the mark that asked for it off.
+func (s *Service) Reindex(ctx context.Context, station string) error {
+	err := s.DB.TakeStation(ctx, station, func(t *store.Take) error {
+		st, err := t.Station(ctx)
+		if err != nil {
+			return err
+		}
+		stored, err := t.Days(ctx)
+		if err != nil {
+			return err
+		}
+		if err := write(ctx, t, st, stored, merge(stored, nil), true); err != nil {
+			return err
+		}
+		return t.Reindexed(ctx)
+	})
+	if errors.Is(err, store.ErrBusy) {
+		return nil // looked at again later
+	}
+	if err != nil {
+		return fmt.Errorf("work indices of station %s out anew: %w", station, err)
+	}
+	s.Log.Info("indices worked out anew", zap.String("station", station))
+	return s.Nudge()
+}
+
 // Withdraw takes back the readings that a committed batch makes void, and brings
 // the station's record into line.
 func (s *Service) Withdraw(ctx context.Context, w store.Withdrawal) error {

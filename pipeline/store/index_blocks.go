@@ -83,11 +83,12 @@ func (t *Take) indexBlock(month pipeline.Day, rows []IndexRow) []any {
 	n := len(rows)
 	out := make([]any, 0, len(indexColumns))
 	out = append(out, t.station, month.Time(), rows[0].Day.Time(), rows[n-1].Day.Time(), rows[0].Thaw.Season.Time(), rows[0].Freeze.Season.Time())
+	numbers := make([]float64, 4*n)
 	for _, of := range []func(*IndexRow) *Indices{
 		func(r *IndexRow) *Indices { return &r.Thaw }, func(r *IndexRow) *Indices { return &r.Freeze },
 	} {
 		running := make(floats, n)
-		curveLow, curveHigh, sumLow, sumHigh := make([]float64, n), make([]float64, n), make([]float64, n), make([]float64, n)
+		curveLow, curveHigh, sumLow, sumHigh := numbers[:n:n], numbers[n:2*n:2*n], numbers[2*n:3*n:3*n], numbers[3*n:]
 		open := false
 		for i := range rows {
 			x := of(&rows[i])
@@ -97,13 +98,26 @@ func (t *Take) indexBlock(month pipeline.Day, rows []IndexRow) []any {
 			curveLow[i], curveHigh[i], sumLow[i], sumHigh[i] = x.CurveLow, x.CurveHigh, x.SumLow, x.SumHigh
 			open = open || x.CurveLow != x.CurveHigh || x.SumLow != x.SumHigh
 		}
-		if !open {
-			curveHigh, sumHigh = nil, nil
+		out = append(out, trimmed(running), trimmed(curveLow), nil, trimmed(sumLow), nil)
+		if open {
+			out[len(out)-3], out[len(out)-1] = trimmed(curveHigh), trimmed(sumHigh)
 		}
-		out = append(out, running, curveLow, curveHigh, sumLow, sumHigh)
+		numbers = make([]float64, 4*n)
 	}
 	return out
 }
+
+// trimmed leaves out what only repeats the element before it, up to the end.
+func trimmed[S ~[]E, E comparable](a S) S {
+	n := len(a)
+	for n > 1 && a[n-1] == a[n-2] {
+		n--
+	}
+	return a[:n]
+}
+
+// held returns the element for a place: the last one holds for all after it.
+func held(a []float64, i int) float64 { return a[min(i, len(a)-1)] }
 
 // DropIndexDays removes all blocks of air_index_daily that hold a day of the
 // station before first or after last.
@@ -126,24 +140,25 @@ type IndexDay struct {
 // IndexDays returns the station's indices of a kind from a day on, in order.
 func (j *Judging) IndexDays(ctx context.Context, kind pipeline.Kind, from pipeline.Day) ([]IndexDay, error) {
 	k := string(kind)
-	rows, err := j.tx.Query(ctx, `select first_day, `+k+`_season, `+k+`_curve_low_c_days, `+k+`_curve_high_c_days, `+k+`_sum_low_c_days, `+k+`_sum_high_c_days
+	rows, err := j.tx.Query(ctx, `select first_day, last_day, `+k+`_season, `+k+`_curve_low_c_days, `+k+`_curve_high_c_days, `+k+`_sum_low_c_days, `+k+`_sum_high_c_days
 		from thaw.index_blocks where station = $1 and last_day >= $2 order by first_day`, j.station, from.Time())
 	if err != nil {
 		return nil, fmt.Errorf("read indices of %s: %w", j.station, err)
 	}
 	var (
 		out                                  []IndexDay
-		first, season                        time.Time
+		first, last, season                  time.Time
 		curveLow, curveHigh, sumLow, sumHigh []float64
 	)
-	_, err = pgx.ForEachRow(rows, []any{&first, &season, &curveLow, &curveHigh, &sumLow, &sumHigh}, func() error {
+	_, err = pgx.ForEachRow(rows, []any{&first, &last, &season, &curveLow, &curveHigh, &sumLow, &sumHigh}, func() error {
 		if curveHigh == nil {
 			curveHigh, sumHigh = curveLow, sumLow
 		}
-		for i := range curveLow {
-			if day := dayOf(first) + pipeline.Day(i); day >= from {
-				out = append(out, IndexDay{Day: day, Season: dayOf(season), CurveLow: curveLow[i], CurveHigh: curveHigh[i], SumLow: sumLow[i], SumHigh: sumHigh[i]})
-			}
+		begin := dayOf(first)
+		for day := max(begin, from); day <= dayOf(last); day++ {
+			i := int(day - begin)
+			out = append(out, IndexDay{Day: day, Season: dayOf(season), CurveLow: held(curveLow, i), CurveHigh: held(curveHigh, i),
+				SumLow: held(sumLow, i), SumHigh: held(sumHigh, i)})
 		}
 		curveHigh, sumHigh = nil, nil
 		return nil

@@ -137,29 +137,28 @@ type SeasonRow struct {
 	BaseC                    float64
 }
 
-// WriteSeasons puts rows in the place of those with the same kind, definition
-// and start.
+var seasonColumns = []string{"station", "kind", "definition", "season_start", "season", "index_c_days", "index_low_c_days", "index_high_c_days",
+	"start_day", "end_day", "through_day", "season_over", "complete", "no_season", "edge_provisional", "onset_provisional",
+	"days_observed", "days_interpolated", "days_missing", "longest_gap_days", "mean_rule", "base_c"}
+
+// WriteSeasons puts rows in the place of those with the same kind and start.
 func (t *Take) WriteSeasons(ctx context.Context, rows []SeasonRow) error {
-	batch := &pgx.Batch{}
-	for _, r := range rows {
-		batch.Queue(`insert into thaw.air_index_season (station, kind, definition, season_start, season,
-				index_c_days, index_low_c_days, index_high_c_days, start_day, end_day, through_day, season_over, complete,
-				no_season, edge_provisional, onset_provisional, days_observed, days_interpolated, days_missing,
-				longest_gap_days, mean_rule, base_c)
-			values ($1, $2, $3, $4, $5, $6, $7, $8, $9, $10, $11, $12, $13, $14, $15, $16, $17, $18, $19, $20, $21, $22)
-			on conflict (station, kind, definition, season_start) do update set
-				season = excluded.season, index_c_days = excluded.index_c_days, index_low_c_days = excluded.index_low_c_days,
-				index_high_c_days = excluded.index_high_c_days, start_day = excluded.start_day, end_day = excluded.end_day,
-				through_day = excluded.through_day, season_over = excluded.season_over, complete = excluded.complete,
-				no_season = excluded.no_season, edge_provisional = excluded.edge_provisional,
-				onset_provisional = excluded.onset_provisional, days_observed = excluded.days_observed,
-				days_interpolated = excluded.days_interpolated, days_missing = excluded.days_missing,
-				longest_gap_days = excluded.longest_gap_days, mean_rule = excluded.mean_rule, base_c = excluded.base_c`,
-			t.station, string(r.Kind), string(r.Definition), r.Start.Time(), r.Label, known(r.Low, r.High), r.Low, r.High,
-			dateOf(r.FirstDay), dateOf(r.LastDay), r.Through.Time(), r.Over, r.Complete, r.NoSeason, r.EdgeProvisional, r.OnsetProvisional,
-			r.Observed, r.Interpolated, r.Missing, r.LongestGap, string(r.Rule), r.BaseC)
+	kinds, starts := make([]string, len(rows)), make([]time.Time, len(rows))
+	for i := range rows {
+		kinds[i], starts[i] = string(rows[i].Kind), rows[i].Start.Time()
 	}
-	if err := t.tx.SendBatch(ctx, batch).Close(); err != nil {
+	_, err := t.tx.Exec(ctx, `delete from thaw.air_index_season where station = $1
+		and (kind, season_start) in (select * from unnest($2::text[], $3::date[]))`, t.station, kinds, starts)
+	if err != nil {
+		return fmt.Errorf("clear seasons of %s: %w", t.station, err)
+	}
+	_, err = t.tx.CopyFrom(ctx, pgx.Identifier{"thaw", "air_index_season"}, seasonColumns, pgx.CopyFromSlice(len(rows), func(i int) ([]any, error) {
+		r := &rows[i]
+		return []any{t.station, string(r.Kind), string(r.Definition), r.Start.Time(), r.Label, known(r.Low, r.High), r.Low, r.High,
+			dateOf(r.FirstDay), dateOf(r.LastDay), r.Through.Time(), r.Over, r.Complete, r.NoSeason, r.EdgeProvisional, r.OnsetProvisional,
+			r.Observed, r.Interpolated, r.Missing, r.LongestGap, string(r.Rule), r.BaseC}, nil
+	}))
+	if err != nil {
 		return fmt.Errorf("write seasons of %s: %w", t.station, err)
 	}
 	return nil

@@ -46,9 +46,28 @@ func (db *DB) Recomputes(ctx context.Context) ([]string, error) {
 	return pgx.CollectRows(rows, pgx.RowTo[string])
 }
 
-// Recomputed takes the mark off.
+// Reindexes returns the stations that are not marked to be made anew, but whose
+// indices are.
+func (db *DB) Reindexes(ctx context.Context) ([]string, error) {
+	rows, err := db.pool.Query(ctx, `select station from thaw.stations where reindex and not recompute order by station`)
+	if err != nil {
+		return nil, fmt.Errorf("read stations whose indices are to be made anew: %w", err)
+	}
+	return pgx.CollectRows(rows, pgx.RowTo[string])
+}
+
+// Reindexed takes that mark off.
+func (t *Take) Reindexed(ctx context.Context) error {
+	_, err := t.tx.Exec(ctx, `update thaw.stations set reindex = false where station = $1 and reindex`, t.station)
+	if err != nil {
+		return fmt.Errorf("take mark off station %s: %w", t.station, err)
+	}
+	return nil
+}
+
+// Recomputed takes both marks off.
 func (t *Take) Recomputed(ctx context.Context) error {
-	_, err := t.tx.Exec(ctx, `update thaw.stations set recompute = false where station = $1 and recompute`, t.station)
+	_, err := t.tx.Exec(ctx, `update thaw.stations set recompute = false, reindex = false where station = $1 and (recompute or reindex)`, t.station)
 	if err != nil {
 		return fmt.Errorf("take mark off station %s: %w", t.station, err)
 	}

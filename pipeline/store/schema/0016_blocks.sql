@@ -14,7 +14,7 @@ insert into thaw.calendar select d, date_trunc('month', d) from generate_series(
 create index on thaw.calendar (month);
 
 create table thaw.daily_blocks (
-    station        text collate "C" not null references thaw.stations,
+    station        text collate "C" not null,
     month          date not null,
     first_day      date not null,
     last_day       date not null,
@@ -38,7 +38,7 @@ create table thaw.daily_blocks (
 ) with (toast_tuple_target = 8160);
 
 create table thaw.index_blocks (
-    station                  text collate "C" not null references thaw.stations,
+    station                  text collate "C" not null,
     month                    date not null,
     first_day                date not null,
     last_day                 date not null,
@@ -55,7 +55,7 @@ create table thaw.index_blocks (
     freeze_sum_low_c_days    double precision[] not null,
     freeze_sum_high_c_days   double precision[],
     primary key (station, first_day),
-    check (cardinality(thaw_curve_low_c_days) = last_day - first_day + 1)
+    check (cardinality(thaw_curve_low_c_days) between 1 and last_day - first_day + 1)
 ) with (toast_tuple_target = 8160);
 comment on table thaw.daily_blocks is 'Daily values in blocks of a month; thaw.daily_values shows them a row a day. An array has an element a day from first_day to last_day.';
 comment on column thaw.daily_blocks.station is 'Station.';
@@ -77,7 +77,7 @@ comment on column thaw.daily_blocks.error_c is 'Standard errors of filled means,
 comment on column thaw.daily_blocks.filled_from is 'Stations that means were filled from; null if none was.';
 comment on column thaw.daily_blocks.tests_made is 'Quality tests made, a bit a test; null if none.';
 comment on column thaw.daily_blocks.tests_failed is 'Quality tests failed, a bit a test; null if none.';
-comment on table thaw.index_blocks is 'Daily indices in blocks of a month, or less where a thaw or freeze year begins; thaw.air_index_daily shows them a row a day. An array has an element a day from first_day to last_day.';
+comment on table thaw.index_blocks is 'Daily indices in blocks of a month, or less where a thaw or freeze year begins; thaw.air_index_daily shows them a row a day. An array has an element a day from first_day on; its last element holds for all days after it.';
 comment on column thaw.index_blocks.station is 'Station.';
 comment on column thaw.index_blocks.month is 'First day of the month.';
 comment on column thaw.index_blocks.first_day is 'First day of the block.';
@@ -131,6 +131,10 @@ from thaw.air_index_daily group by 1, 2, 5, 6;
 -- Written anew, so that what is usual is left out of them.
 update thaw.stations set recompute = true where station in (select station from thaw.daily_blocks);
 
+-- Stations are never deleted, and a look at each for every row written costs more
+-- than the row.
+alter table thaw.air_index_season drop constraint air_index_season_station_fkey;
+
 drop view thaw.surface_index_daily;
 drop table thaw.air_index_daily;
 drop table thaw.daily_values;
@@ -167,20 +171,20 @@ comment on column thaw.daily_values.tests_failed is 'Quality tests that the days
 
 create view thaw.air_index_daily as
 select c.day, b.station, b.thaw_season, b.freeze_season,
-       b.thaw_running_c_days[i.i] as thaw_running_c_days,
-       case when b.thaw_curve_high_c_days[i.i] is null or b.thaw_curve_high_c_days[i.i] = b.thaw_curve_low_c_days[i.i] then b.thaw_curve_low_c_days[i.i] end as thaw_curve_c_days,
-       b.thaw_curve_low_c_days[i.i] as thaw_curve_low_c_days,
-       (coalesce(b.thaw_curve_high_c_days, b.thaw_curve_low_c_days))[i.i] as thaw_curve_high_c_days,
-       case when b.thaw_sum_high_c_days[i.i] is null or b.thaw_sum_high_c_days[i.i] = b.thaw_sum_low_c_days[i.i] then b.thaw_sum_low_c_days[i.i] end as thaw_sum_c_days,
-       b.thaw_sum_low_c_days[i.i] as thaw_sum_low_c_days,
-       (coalesce(b.thaw_sum_high_c_days, b.thaw_sum_low_c_days))[i.i] as thaw_sum_high_c_days,
-       b.freeze_running_c_days[i.i] as freeze_running_c_days,
-       case when b.freeze_curve_high_c_days[i.i] is null or b.freeze_curve_high_c_days[i.i] = b.freeze_curve_low_c_days[i.i] then b.freeze_curve_low_c_days[i.i] end as freeze_curve_c_days,
-       b.freeze_curve_low_c_days[i.i] as freeze_curve_low_c_days,
-       (coalesce(b.freeze_curve_high_c_days, b.freeze_curve_low_c_days))[i.i] as freeze_curve_high_c_days,
-       case when b.freeze_sum_high_c_days[i.i] is null or b.freeze_sum_high_c_days[i.i] = b.freeze_sum_low_c_days[i.i] then b.freeze_sum_low_c_days[i.i] end as freeze_sum_c_days,
-       b.freeze_sum_low_c_days[i.i] as freeze_sum_low_c_days,
-       (coalesce(b.freeze_sum_high_c_days, b.freeze_sum_low_c_days))[i.i] as freeze_sum_high_c_days
+       b.thaw_running_c_days[least(i.i, cardinality(b.thaw_running_c_days))] as thaw_running_c_days,
+       case when b.thaw_curve_high_c_days is null or b.thaw_curve_high_c_days[least(i.i, cardinality(b.thaw_curve_high_c_days))] = b.thaw_curve_low_c_days[least(i.i, cardinality(b.thaw_curve_low_c_days))] then b.thaw_curve_low_c_days[least(i.i, cardinality(b.thaw_curve_low_c_days))] end as thaw_curve_c_days,
+       b.thaw_curve_low_c_days[least(i.i, cardinality(b.thaw_curve_low_c_days))] as thaw_curve_low_c_days,
+       case when b.thaw_curve_high_c_days is null then b.thaw_curve_low_c_days[least(i.i, cardinality(b.thaw_curve_low_c_days))] else b.thaw_curve_high_c_days[least(i.i, cardinality(b.thaw_curve_high_c_days))] end as thaw_curve_high_c_days,
+       case when b.thaw_sum_high_c_days is null or b.thaw_sum_high_c_days[least(i.i, cardinality(b.thaw_sum_high_c_days))] = b.thaw_sum_low_c_days[least(i.i, cardinality(b.thaw_sum_low_c_days))] then b.thaw_sum_low_c_days[least(i.i, cardinality(b.thaw_sum_low_c_days))] end as thaw_sum_c_days,
+       b.thaw_sum_low_c_days[least(i.i, cardinality(b.thaw_sum_low_c_days))] as thaw_sum_low_c_days,
+       case when b.thaw_sum_high_c_days is null then b.thaw_sum_low_c_days[least(i.i, cardinality(b.thaw_sum_low_c_days))] else b.thaw_sum_high_c_days[least(i.i, cardinality(b.thaw_sum_high_c_days))] end as thaw_sum_high_c_days,
+       b.freeze_running_c_days[least(i.i, cardinality(b.freeze_running_c_days))] as freeze_running_c_days,
+       case when b.freeze_curve_high_c_days is null or b.freeze_curve_high_c_days[least(i.i, cardinality(b.freeze_curve_high_c_days))] = b.freeze_curve_low_c_days[least(i.i, cardinality(b.freeze_curve_low_c_days))] then b.freeze_curve_low_c_days[least(i.i, cardinality(b.freeze_curve_low_c_days))] end as freeze_curve_c_days,
+       b.freeze_curve_low_c_days[least(i.i, cardinality(b.freeze_curve_low_c_days))] as freeze_curve_low_c_days,
+       case when b.freeze_curve_high_c_days is null then b.freeze_curve_low_c_days[least(i.i, cardinality(b.freeze_curve_low_c_days))] else b.freeze_curve_high_c_days[least(i.i, cardinality(b.freeze_curve_high_c_days))] end as freeze_curve_high_c_days,
+       case when b.freeze_sum_high_c_days is null or b.freeze_sum_high_c_days[least(i.i, cardinality(b.freeze_sum_high_c_days))] = b.freeze_sum_low_c_days[least(i.i, cardinality(b.freeze_sum_low_c_days))] then b.freeze_sum_low_c_days[least(i.i, cardinality(b.freeze_sum_low_c_days))] end as freeze_sum_c_days,
+       b.freeze_sum_low_c_days[least(i.i, cardinality(b.freeze_sum_low_c_days))] as freeze_sum_low_c_days,
+       case when b.freeze_sum_high_c_days is null then b.freeze_sum_low_c_days[least(i.i, cardinality(b.freeze_sum_low_c_days))] else b.freeze_sum_high_c_days[least(i.i, cardinality(b.freeze_sum_high_c_days))] end as freeze_sum_high_c_days
 from thaw.index_blocks b
 join thaw.calendar c on c.month = b.month and c.day between b.first_day and b.last_day
 cross join lateral (select c.day - b.first_day + 1) as i (i);
