@@ -32,7 +32,7 @@ func makeDays(ctx context.Context, t *store.Take, st *pipeline.Station, edits []
 				next++
 			}
 		}
-		err := eachEdited(ctx, t, edits, st.DayStart(run[0]), st.DayStart(run[len(run)-1]+1), func(r daily.Input) {
+		err := eachEdited(ctx, t, st, edits, st.DayStart(run[0]), st.DayStart(run[len(run)-1]+1), func(r daily.Input) {
 			day := st.DayAt(time.Unix(r.StartS, 0))
 			finish(day)
 			if next < len(run) && run[next] == day {
@@ -55,7 +55,8 @@ func editsOf(ctx context.Context, t *store.Take, st *pipeline.Station) ([]daily.
 	}
 	edits := make([]daily.Edit, len(kept))
 	for i, e := range kept {
-		edits[i] = daily.Edit{Kind: e.Kind, Variable: e.Variable, Sensor: e.Sensor, Feed: e.Feed, FromS: e.FromUTC.Unix(), ToS: e.ToUTC.Unix(), Amount: e.ValueC}
+		_, variable := e.Variable.Of()
+		edits[i] = daily.Edit{Kind: e.Kind, Variable: variable, Sensor: e.Sensor, Feed: e.Feed, FromS: e.FromUTC.Unix(), ToS: e.ToUTC.Unix(), Amount: e.ValueC}
 		if e.Kind == pipeline.EditShift {
 			edits[i].Amount = float64(e.ShiftS)
 		}
@@ -63,23 +64,22 @@ func editsOf(ctx context.Context, t *store.Take, st *pipeline.Station) ([]daily.
 	return edits, nil
 }
 
-// eachEdited calls f for the station's readings whose spans start in [from, to)
-// once edits have been applied, in order of time.
-func eachEdited(ctx context.Context, t *store.Take, edits []daily.Edit, from, to time.Time, f func(daily.Input)) error {
-	each := func(s *store.SeriesInfo, startS int64, valueC float64, q pipeline.Quality) daily.Input {
-		return daily.Input{Feed: s.Feed, Rank: s.Rank, Sensor: s.Sensor, Variable: s.Variable, SpanS: s.SpanS, StartS: startS, ValueC: valueC, Quality: q}
+// eachEdited calls f for the station's readings of what it measures whose spans
+// start in [from, to), once edits have been applied, in order of time.
+func eachEdited(ctx context.Context, t *store.Take, st *pipeline.Station, edits []daily.Edit, from, to time.Time, f func(daily.Input)) error {
+	each := func(from, to time.Time, f func(daily.Input)) error {
+		return t.EachReading(ctx, from, to, func(s *store.SeriesInfo, startS int64, valueC float64, q pipeline.Quality) {
+			if medium, variable := s.Variable.Of(); medium == st.Measures {
+				f(daily.Input{Feed: s.Feed, Rank: s.Rank, Sensor: s.Sensor, Variable: variable, SpanS: s.SpanS, StartS: startS, ValueC: valueC, Quality: q})
+			}
+		})
 	}
 	if len(edits) == 0 {
-		return t.EachReading(ctx, from, to, func(s *store.SeriesInfo, startS int64, valueC float64, q pipeline.Quality) {
-			f(each(s, startS, valueC, q))
-		})
+		return each(from, to, f)
 	}
 	reach := time.Duration(daily.Reach(edits)) * time.Second
 	var in []daily.Input
-	err := t.EachReading(ctx, from.Add(-reach), to.Add(reach), func(s *store.SeriesInfo, startS int64, valueC float64, q pipeline.Quality) {
-		in = append(in, each(s, startS, valueC, q))
-	})
-	if err != nil {
+	if err := each(from.Add(-reach), to.Add(reach), func(r daily.Input) { in = append(in, r) }); err != nil {
 		return err
 	}
 	for _, r := range daily.Edited(edits, in) {

@@ -13,7 +13,7 @@ import (
 // bringIntoLine makes the daily values of days anew from the readings, and with
 // them everything that follows: filled days and bounds around gaps, the indices
 // of every season touched, and a line in changes. days is sorted.
-func bringIntoLine(ctx context.Context, t *store.Take, st *pipeline.Station, days []pipeline.Day) error {
+func (s *Service) bringIntoLine(ctx context.Context, t *store.Take, st *pipeline.Station, days []pipeline.Day) error {
 	stored, err := t.Days(ctx)
 	if err != nil {
 		return err
@@ -26,7 +26,7 @@ func bringIntoLine(ctx context.Context, t *store.Take, st *pipeline.Station, day
 	if err != nil {
 		return err
 	}
-	return write(ctx, t, st, stored, merge(stored, values), false)
+	return s.write(ctx, t, st, stored, merge(stored, values), false)
 }
 
 // beyond adds to days those that lie between them and the stored record. A day
@@ -40,18 +40,23 @@ func beyond(stored []store.DayRow, days []pipeline.Day) []pipeline.Day {
 		}
 	}
 	first, last := days[0], days[len(days)-1]
-	if i := slices.IndexFunc(stored, func(d store.DayRow) bool { return d.Origin == pipeline.Observed }); i < 0 {
+	observed := func(d store.DayRow) bool { return d.Origin == pipeline.Observed }
+	if i := slices.IndexFunc(stored, observed); i < 0 {
 		add(first, last)
 	} else {
+		end := len(stored) - 1
+		for !observed(stored[end]) {
+			end-- // filled from neighbours
+		}
 		add(first, stored[i].Day-1)
-		add(stored[len(stored)-1].Day+1, last)
+		add(stored[end].Day+1, last)
 	}
 	slices.Sort(out)
 	return slices.Compact(out)
 }
 
 // makeAnew makes a station's whole record anew.
-func makeAnew(ctx context.Context, t *store.Take, st *pipeline.Station) error {
+func (s *Service) makeAnew(ctx context.Context, t *store.Take, st *pipeline.Station) error {
 	stored, err := t.Days(ctx)
 	if err != nil {
 		return err
@@ -61,7 +66,7 @@ func makeAnew(ctx context.Context, t *store.Take, st *pipeline.Station) error {
 		if err != nil {
 			return err
 		}
-		return write(ctx, t, st, stored, values, true)
+		return s.write(ctx, t, st, stored, values, true)
 	}
 	first, last, ok, err := t.Span(ctx)
 	if err != nil {
@@ -88,7 +93,7 @@ func makeAnew(ctx context.Context, t *store.Take, st *pipeline.Station) error {
 			return err
 		}
 	}
-	return write(ctx, t, st, stored, values, true)
+	return s.write(ctx, t, st, stored, values, true)
 }
 
 // reached adds to days those that edits may have moved their readings to, and
@@ -128,36 +133,44 @@ func merge(stored []store.DayRow, made []daily.Value) []daily.Value {
 	return append(out, made[i:]...)
 }
 
-// write completes the record, writes the days that differ from the stored ones
-// and the indices that follow from them, and leaves a line in changes. With all,
-// every index is worked out again, whether its days have changed or not: the
-// rules may have.
-func write(ctx context.Context, t *store.Take, st *pipeline.Station, stored []store.DayRow, values []daily.Value, all bool) error {
-	complete, extremes := daily.Complete(values, st.FillDays)
-	var rows []store.DayRow
-	if len(complete) > 0 {
-		begin := complete[0].Day
-		start := firstSeasonStart(st, begin)
-		rows = make([]store.DayRow, 0, int(begin-start)+len(complete))
-		for d := start; d < begin; d++ {
-			low, high := extremes.Bounds(d)
-			rows = append(rows, store.DayRow{Day: d, LowC: low, HighC: high, Quality: pipeline.QualityMissing, Rule: st.Mean})
-		}
-		for i := range complete {
-			rows = append(rows, toRow(&complete[i]))
-		}
-	}
-	differing, changed := differences(stored, rows)
-	if err := t.WriteDays(ctx, rows, differing); err != nil {
+// write completes the record, writes the days that differ from the
+// stored ones and the indices that follow from them, and leaves a line in
+// changes. With all, every index is worked out again, whether its days have
+// changed or not: the rules may have.
+func (s *Service) write(ctx context.Context, t *store.Take, st *pipeline.Station, stored []store.DayRow, values []daily.Value, all bool) error {
+	f, err := s.fill(ctx, t, st, values)
+	if err != nil {
 		return err
 	}
-	return index(ctx, t, st, stored, rows, changed, all)
+	var rows []store.DayRow
+	if len(f.days) > 0 {
+		begin := f.days[0].Day
+		start := firstSeasonStart(st, begin)
+		rows = make([]store.DayRow, 0, int(begin-start)+len(f.days))
+		for d := start; d < begin; d++ {
+			low, high := f.extremes.Bounds(d)
+			rows = append(rows, store.DayRow{Day: d, LowC: low, HighC: high, Quality: pipeline.QualityMissing, Rule: st.Mean})
+		}
+		for i := range f.days {
+			rows = append(rows, toRow(&f.days[i]))
+		}
+	}
+	d := differences(stored, rows)
+	if err := t.WriteDays(ctx, rows, d.days); err != nil {
+		return err
+	}
+	if d.observed {
+		if err := t.MarkNeighbours(ctx); err != nil {
+			return err
+		}
+	}
+	return index(ctx, t, st, f, stored, rows, d.indexed, all)
 }
 
 // index works the indices of changed days out, or with all those of the whole
 // record, and leaves a line in changes. stored are the days whose indices the
 // tables hold, rows those of which they should.
-func index(ctx context.Context, t *store.Take, st *pipeline.Station, stored, rows []store.DayRow, changed []pipeline.Day, all bool) error {
+func index(ctx context.Context, t *store.Take, st *pipeline.Station, f *filled, stored, rows []store.DayRow, changed []pipeline.Day, all bool) error {
 	if len(rows) == 0 {
 		// Nothing usable is left, or came yet.
 		if len(stored) == 0 {
@@ -168,7 +181,11 @@ func index(ctx context.Context, t *store.Take, st *pipeline.Station, stored, row
 		}
 		return t.AddChange(ctx, stored[0].Day)
 	}
-	r := newRecord(st, rows)
+	r := newRecord(st, f, rows)
+	var err error
+	if r.breaks, err = t.Breaks(ctx); err != nil {
+		return err
+	}
 	stretches := r.touched(changed)
 	if all {
 		stretches = []stretch{{r.begin, r.end()}}
@@ -191,39 +208,53 @@ func index(ctx context.Context, t *store.Take, st *pipeline.Station, stored, row
 	return t.AddChange(ctx, from)
 }
 
-// differences compares the stored days with those that should be: differing are
-// the days whose rows are not what they should be, changed those of them whose
-// indices have to be worked out again because their means, or bounds, are not
-// what they were. Both are sorted.
-func differences(stored, rows []store.DayRow) (differing, changed []pipeline.Day) {
-	both := func(d pipeline.Day) { differing, changed = append(differing, d), append(changed, d) }
+// difference is how stored days differ from those that should be. Days are sorted.
+type difference struct {
+	days []pipeline.Day // whose rows are not what they should be
+	// indexed are those of them whose indices have to be worked out again because
+	// the mean, its bounds or error, its rule, or whether it is doubtful is not
+	// what it was.
+	indexed  []pipeline.Day
+	observed bool // whether one of them is, or was, observed
+}
+
+// differences compares the stored days with those that should be.
+func differences(stored, rows []store.DayRow) difference {
+	var d difference
+	add := func(x *store.DayRow, observed bool) {
+		d.days, d.indexed = append(d.days, x.Day), append(d.indexed, x.Day)
+		d.observed = d.observed || observed
+	}
+	isObserved := func(x *store.DayRow) bool { return x.Origin == pipeline.Observed }
 	i := 0
 	for k := range rows {
 		n := &rows[k]
 		for ; i < len(stored) && stored[i].Day < n.Day; i++ {
-			both(stored[i].Day)
+			add(&stored[i], isObserved(&stored[i]))
 		}
 		if i == len(stored) || stored[i].Day > n.Day {
-			both(n.Day)
+			add(n, isObserved(n))
 			continue
 		}
 		o := &stored[i]
 		i++
-		if o.LowC != n.LowC || o.HighC != n.HighC || o.Origin != n.Origin {
-			both(n.Day)
+		mean := o.LowC != n.LowC || o.HighC != n.HighC || o.Origin != n.Origin
+		if mean || !equal(o.ErrorC, n.ErrorC) || o.Rule != n.Rule || isDoubtful(o) != isDoubtful(n) {
+			add(n, mean && (isObserved(o) || isObserved(n)))
 		} else if !same(o, n) {
-			differing = append(differing, n.Day)
+			d.days = append(d.days, n.Day)
 		}
 	}
 	for ; i < len(stored); i++ {
-		both(stored[i].Day)
+		add(&stored[i], isObserved(&stored[i]))
 	}
-	return differing, changed
+	return d
 }
+
+func equal(x, y *float64) bool { return x == nil && y == nil || x != nil && y != nil && *x == *y }
 
 // same says whether two rows of one day agree in everything.
 func same(a, b *store.DayRow) bool {
-	equal := func(x, y *float64) bool { return x == nil && y == nil || x != nil && y != nil && *x == *y }
 	x, y := *a, *b
 	x.MeanC, x.MaxC, x.MinC, x.ErrorC, y.MeanC, y.MaxC, y.MinC, y.ErrorC = nil, nil, nil, nil, nil, nil, nil, nil
 	return x == y && equal(a.MeanC, b.MeanC) && equal(a.MaxC, b.MaxC) && equal(a.MinC, b.MinC) && equal(a.ErrorC, b.ErrorC)
@@ -231,9 +262,12 @@ func same(a, b *store.DayRow) bool {
 
 func fromRow(d *store.DayRow) daily.Value {
 	v := daily.Value{Day: d.Day, Origin: d.Origin, LowC: d.LowC, HighC: d.HighC, Rule: d.Rule, Hours: d.Hours,
-		LongestHole: d.LongestHole, Quality: d.Quality}
+		LongestHole: d.LongestHole, Quality: d.Quality, From: d.FilledFrom, TestsMade: uint32(d.TestsMade), TestsFailed: uint32(d.TestsFailed)}
 	if d.MeanC != nil {
 		v.MeanC = *d.MeanC
+	}
+	if d.ErrorC != nil {
+		v.ErrorC, v.HasError = *d.ErrorC, true
 	}
 	if d.MaxC != nil {
 		v.MaxC, v.HasMax = *d.MaxC, true
@@ -246,7 +280,10 @@ func fromRow(d *store.DayRow) daily.Value {
 
 func toRow(v *daily.Value) store.DayRow {
 	d := store.DayRow{Day: v.Day, Origin: v.Origin, LowC: v.LowC, HighC: v.HighC, Rule: v.Rule, Hours: v.Hours,
-		LongestHole: v.LongestHole, Quality: v.Quality}
+		LongestHole: v.LongestHole, Quality: v.Quality, FilledFrom: v.From, TestsMade: int32(v.TestsMade), TestsFailed: int32(v.TestsFailed)}
+	if v.HasError {
+		d.ErrorC = &v.ErrorC
+	}
 	if v.Origin != pipeline.Missing {
 		d.MeanC = &v.MeanC
 	}

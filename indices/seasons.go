@@ -5,6 +5,7 @@ import (
 	"slices"
 
 	"thawledger/indices/degreeday"
+	"thawledger/indices/filling"
 	"thawledger/pipeline"
 	"thawledger/pipeline/store"
 )
@@ -13,13 +14,18 @@ import (
 type stretch struct{ first, last pipeline.Day }
 
 // record is a station's daily values as the index arithmetic wants them, every
-// day once from the start of the first season to the last observed day.
+// day once from the start of the first season to the last observed or filled day.
 type record struct {
-	st    *pipeline.Station
-	means []degreeday.DayMean
-	// begin is the first observed day: days before it are there only so that the
-	// seasons which it falls into are whole.
-	begin pipeline.Day
+	st     *pipeline.Station
+	filled *filled
+	means  []degreeday.DayMean // less the base, where that changes within the year
+	baseC  float64             // 0 there
+	begin  pipeline.Day
+	rules  []pipeline.MeanRule // of the days in means
+	// doubtful are days of which the indices are also worked out without, and the
+	// means that these days then have: none, with bounds.
+	doubtful map[pipeline.Day]degreeday.DayMean
+	breaks   []pipeline.Day
 }
 
 func (r *record) first() pipeline.Day { return r.means[0].Day }
@@ -28,18 +34,37 @@ func (r *record) end() pipeline.Day   { return r.means[len(r.means)-1].Day }
 var kinds = []pipeline.Kind{pipeline.Thaw, pipeline.Freeze}
 
 // newRecord takes a station's daily values, every day once in order, at least
-// one of them observed.
-func newRecord(st *pipeline.Station, rows []store.DayRow) *record {
-	r := &record{st: st, means: make([]degreeday.DayMean, len(rows))}
+// one of them observed. Days before the first observed one, begin, are there only
+// so that the seasons which it falls into are whole.
+func newRecord(st *pipeline.Station, f *filled, rows []store.DayRow) *record {
+	r := &record{st: st, filled: f, means: make([]degreeday.DayMean, len(rows)), baseC: st.BaseC, rules: make([]pipeline.MeanRule, len(rows)),
+		doubtful: map[pipeline.Day]degreeday.DayMean{}}
+	if len(st.Bases) > 0 {
+		r.baseC = 0
+	}
 	began := false
 	for i := range rows {
 		d := &rows[i]
-		r.means[i] = degreeday.DayMean{Day: d.Day, Origin: d.Origin, LowC: d.LowC, HighC: d.HighC}
-		if d.MeanC != nil {
-			r.means[i].MeanC = *d.MeanC
+		shift := 0.0
+		if len(st.Bases) > 0 {
+			shift = st.BaseOn(d.Day)
 		}
+		m := degreeday.DayMean{Day: d.Day, Origin: d.Origin, LowC: d.LowC - shift, HighC: d.HighC - shift}
+		if d.MeanC != nil {
+			m.MeanC = *d.MeanC - shift
+		}
+		if d.ErrorC != nil {
+			m.HasError = true
+			m.AboveC, _ = filling.Positive(m.MeanC-r.baseC, *d.ErrorC)
+			m.BelowC, _ = filling.Positive(r.baseC-m.MeanC, *d.ErrorC)
+		}
+		r.means[i], r.rules[i] = m, d.Rule
 		if !began && d.Origin == pipeline.Observed {
 			r.begin, began = d.Day, true
+		}
+		if isDoubtful(d) {
+			low, high := f.extremes.Bounds(d.Day)
+			r.doubtful[d.Day] = degreeday.DayMean{Day: d.Day, Origin: pipeline.Missing, LowC: low - shift, HighC: high - shift}
 		}
 	}
 	return r
@@ -60,9 +85,45 @@ func (r *record) window(kind pipeline.Kind, d pipeline.Day) degreeday.Window {
 
 // build works the season of a kind in a window out; the record has a day of it.
 func (r *record) build(kind pipeline.Kind, w degreeday.Window) *degreeday.Season {
-	last := min(w.Last, r.end())
-	s := degreeday.Build(kind, w, w.Label(), r.st.BaseC, r.means[w.First-r.first():last-r.first()+1], r.end())
+	s := degreeday.Build(kind, w, w.Label(), r.baseC, r.within(w), r.end())
 	return &s
+}
+
+// within returns the record's days in a window.
+func (r *record) within(w degreeday.Window) []degreeday.DayMean {
+	return r.means[w.First-r.first() : min(w.Last, r.end())-r.first()+1]
+}
+
+// withoutDoubtful works a season out with its doubtful days taken for missing,
+// and counts them; nil if it has none.
+func (r *record) withoutDoubtful(s *degreeday.Season) (without *degreeday.Season, n int) {
+	if len(r.doubtful) == 0 {
+		return nil, 0
+	}
+	means := slices.Clone(r.within(s.Window))
+	for i := range means {
+		if m, ok := r.doubtful[means[i].Day]; ok {
+			means[i] = m
+			n++
+		}
+	}
+	if n == 0 {
+		return nil, 0
+	}
+	out := degreeday.Build(s.Kind, s.Window, s.Label, r.baseC, means, r.end())
+	return &out, n
+}
+
+// homogeneous says whether a season's days are made by one rule, that of the
+// record's last day, and no break of the record lies within them.
+func (r *record) homogeneous(w degreeday.Window) bool {
+	last := min(w.Last, r.end())
+	for d := max(w.First, r.begin); d <= last; d++ {
+		if r.rules[d-r.first()] != r.rules[len(r.rules)-1] {
+			return false
+		}
+	}
+	return !slices.ContainsFunc(r.breaks, func(d pipeline.Day) bool { return w.First < d && d <= last })
 }
 
 // touched returns the days whose indices follow from changed days: in every
@@ -145,6 +206,9 @@ func indicesOf(s *degreeday.Season, d pipeline.Day) store.Indices {
 // seasonRows returns a season's rows, one a definition.
 func (r *record) seasonRows(s *degreeday.Season) []store.SeasonRow {
 	rows := make([]store.SeasonRow, 0, 2)
+	without, doubtful := r.withoutDoubtful(s)
+	curveError, sumError, hasError := r.filled.standardErrors(s, r.baseC, r.within(s.Window))
+	homogeneous := r.homogeneous(s.Window)
 	for _, d := range []struct {
 		definition pipeline.Definition
 		result     *degreeday.Result
@@ -154,7 +218,17 @@ func (r *record) seasonRows(s *degreeday.Season) []store.SeasonRow {
 			Low: d.result.Index.Low, High: d.result.Index.High, Through: s.Through, Over: s.Over, Complete: s.Complete(),
 			NoSeason: d.result.NoSeason, EdgeProvisional: d.result.EdgeProvisional, OnsetProvisional: d.result.OnsetProvisional,
 			Observed: s.Observed, Interpolated: s.Interpolated, Missing: s.Missing, LongestGap: s.LongestGap,
-			Rule: r.st.Mean, BaseC: r.st.BaseC,
+			Rule: r.st.Mean, BaseC: r.st.BaseC, Neighbour: s.ByNeighbour, Climate: s.ByClimate, Doubtful: doubtful, Homogeneous: homogeneous,
+		}
+		of, e := func(s *degreeday.Season) degreeday.Bounds { return s.Curve.Index }, curveError
+		if d.definition == pipeline.Sum {
+			of, e = func(s *degreeday.Season) degreeday.Bounds { return s.Sum.Index }, sumError
+		}
+		if hasError {
+			row.ErrorC = &e
+		}
+		if without != nil {
+			row.Without = &[2]float64{of(without).Low, of(without).High}
 		}
 		if d.result.Began {
 			row.FirstDay, row.LastDay = &d.result.First, &d.result.Last

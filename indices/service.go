@@ -33,6 +33,8 @@ type Service struct {
 	FailuresAllowed int
 	// Workers is how many stations are in work at a time.
 	Workers int
+
+	models models
 }
 
 // takeParts is how many messages are asked for in one go: with 500 readings in
@@ -186,7 +188,7 @@ func (s *Service) recomputeMarked(intake, work context.Context) error {
 	for _, chore := range []struct {
 		due  func(context.Context) ([]string, error)
 		make func(context.Context, string) error
-	}{{s.DB.Recomputes, s.Recompute}, {s.DB.Reindexes, s.Reindex}} {
+	}{{s.DB.Recomputes, s.Recompute}, {s.DB.Reindexes, s.Reindex}, {s.DB.Refills, s.Refill}} {
 		stations, err := chore.due(work)
 		failed = append(failed, err)
 		errs := make([]error, len(stations))

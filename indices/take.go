@@ -40,7 +40,7 @@ func (s *Service) take(ctx context.Context, station string, parts []*pipeline.Pa
 			return err
 		}
 		if len(days) > 0 {
-			if err := bringIntoLine(ctx, t, st, days); err != nil {
+			if err := s.bringIntoLine(ctx, t, st, days); err != nil {
 				return err
 			}
 		}
@@ -60,7 +60,7 @@ func (s *Service) Recompute(ctx context.Context, station string) error {
 		if err != nil {
 			return err
 		}
-		if err := makeAnew(ctx, t, st); err != nil {
+		if err := s.makeAnew(ctx, t, st); err != nil {
 			return err
 		}
 		return t.Recomputed(ctx)
@@ -78,6 +78,16 @@ func (s *Service) Recompute(ctx context.Context, station string) error {
 // Reindex fills a station's gaps and works its indices out anew, from the daily
 // values that it has, and takes the mark that asked for it off.
 func (s *Service) Reindex(ctx context.Context, station string) error {
+	return s.refill(ctx, station, true)
+}
+
+// Refill fills a station's gaps anew and works the indices out that follow from
+// what that changes.
+func (s *Service) Refill(ctx context.Context, station string) error {
+	return s.refill(ctx, station, false)
+}
+
+func (s *Service) refill(ctx context.Context, station string, all bool) error {
 	err := s.DB.TakeStation(ctx, station, func(t *store.Take) error {
 		st, err := t.Station(ctx)
 		if err != nil {
@@ -87,7 +97,7 @@ func (s *Service) Reindex(ctx context.Context, station string) error {
 		if err != nil {
 			return err
 		}
-		if err := write(ctx, t, st, stored, merge(stored, nil), true); err != nil {
+		if err := s.write(ctx, t, st, stored, merge(stored, nil), all); err != nil {
 			return err
 		}
 		return t.Reindexed(ctx)
@@ -98,7 +108,7 @@ func (s *Service) Reindex(ctx context.Context, station string) error {
 	if err != nil {
 		return fmt.Errorf("work indices of station %s out anew: %w", station, err)
 	}
-	s.Log.Info("indices worked out anew", zap.String("station", station))
+	s.Log.Info("gaps filled and indices worked out anew", zap.String("station", station))
 	return s.Nudge()
 }
 
@@ -114,7 +124,7 @@ func (s *Service) Withdraw(ctx context.Context, w store.Withdrawal) error {
 		if days, err = t.Withdraw(ctx, st, w.Batch); err != nil || len(days) == 0 {
 			return err
 		}
-		return bringIntoLine(ctx, t, st, days)
+		return s.bringIntoLine(ctx, t, st, days)
 	})
 	if errors.Is(err, store.ErrBusy) {
 		return nil // looked at again later

@@ -35,7 +35,12 @@ const (
 	Missing      Origin = 0 // no mean: bounds only
 	Observed     Origin = 1 // made from readings by the station's rule
 	Interpolated Origin = 2 // on a straight line between the observed days beside it
+	ByNeighbour  Origin = 3 // by regression on another station
+	ByClimate    Origin = 4 // the mean of the date
 )
+
+// Filled reports whether a mean was estimated, with an error.
+func (o Origin) Filled() bool { return o == Interpolated || o == ByNeighbour || o == ByClimate }
 
 // String returns the origin's name.
 func (o Origin) String() string {
@@ -46,6 +51,10 @@ func (o Origin) String() string {
 		return "observed"
 	case Interpolated:
 		return "interpolated"
+	case ByNeighbour:
+		return "neighbour"
+	case ByClimate:
+		return "climatology"
 	}
 	return "unknown"
 }

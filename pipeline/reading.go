@@ -9,18 +9,32 @@ import (
 // they never change their meaning.
 type Variable uint8
 
-// The variables that readings may have. AirTemp is a value at an instant; the
-// others are statistics over the span that the reading covers.
+// The variables that readings may have. AirTemp and SurfaceTemp are values at an
+// instant; the others are statistics over the span that the reading covers.
 const (
 	AirTemp     Variable = 1
 	AirTempMean Variable = 2
 	AirTempMax  Variable = 3
 	AirTempMin  Variable = 4
+
+	SurfaceTemp     Variable = 5
+	SurfaceTempMean Variable = 6
+	SurfaceTempMax  Variable = 7
+	SurfaceTempMin  Variable = 8
 )
+
+// Of returns the variable's medium, and the variable of the air that it answers to.
+func (v Variable) Of() (Medium, Variable) {
+	if v >= SurfaceTemp {
+		return OfTheSurface, v - SurfaceTemp + AirTemp
+	}
+	return OfTheAir, v
+}
 
 // Variables maps each variable to its name in settings and tables.
 var Variables = map[Variable]string{
 	AirTemp: "air_temp", AirTempMean: "air_temp_mean", AirTempMax: "air_temp_max", AirTempMin: "air_temp_min",
+	SurfaceTemp: "surface_temp", SurfaceTempMean: "surface_temp_mean", SurfaceTempMax: "surface_temp_max", SurfaceTempMin: "surface_temp_min",
 }
 
 // String returns the variable's name in settings and tables.
@@ -38,7 +52,7 @@ func ParseVariable(name string) (Variable, error) {
 			return v, nil
 		}
 	}
-	return 0, fmt.Errorf("%q is no variable; known are air_temp, air_temp_mean, air_temp_max, air_temp_min", name)
+	return 0, fmt.Errorf("%q is no variable; known are air_temp, air_temp_mean, air_temp_max, air_temp_min, and the same of surface_temp", name)
 }
 
 // Quality is a quality mark by WMO BUFR table 0 33 020 (WMO-No. 306, volume I.2,

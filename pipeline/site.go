@@ -16,15 +16,20 @@ type Surface struct {
 	Name    string
 	Factors []NFactor
 	Designs []DesignValue
+	Ground  []Layer // from the top down; nil if the settings have no profile
+	// MeasuredBy is the station that measures the surface's own temperature; "" if none does.
+	MeasuredBy string
 }
 
 // NFactor is the ratio of a surface index to the air index of the same season.
 // It holds from the first season that starts on or after From.
 type NFactor struct {
-	Kind   Kind
-	From   Day
-	Value  float64
-	Source string
+	Kind  Kind
+	From  Day
+	Value float64
+	// Low and High are its range; both are Value where none is stated.
+	Low, High float64
+	Source    string
 }
 
 // Of says which index a design value limits.
@@ -59,10 +64,18 @@ type DesignValue struct {
 	From       Day // first day on which it was in force
 	NearShare  float64
 	Source     string
+	// DepthM is not nil for a value that is stated as a depth of thaw, in m. Index
+	// is then the surface index that reaches it; see indices/ground.
+	DepthM *float64
 }
 
 // IndexCDays returns the design value in degC.d.
-func (d *DesignValue) IndexCDays() (float64, error) { return d.Unit.DegCDays(d.Index) }
+func (d *DesignValue) IndexCDays() (float64, error) {
+	if d.DepthM != nil && d.Index == 0 {
+		return 0, fmt.Errorf("the depth of %g m has not been turned into an index", *d.DepthM)
+	}
+	return d.Unit.DegCDays(d.Index)
+}
 
 // Comparable says why an index of a station with the given base cannot be
 // compared with the design value; nil if it can. A definition that is not

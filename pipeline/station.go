@@ -32,9 +32,48 @@ type Station struct {
 	ThawYear   MonthDay // first day of the window that a thaw season is sought in
 	FreezeYear MonthDay // first day of the window that a freeze season is sought in
 	Facts      []Fact
+	Measures   Medium
+	// Bases are not empty for a record with a base that changes within the year:
+	// each holds from its date until the next; before the first BaseC does.
+	Bases []BaseFrom
+	// Neighbours are stations that missing days are filled from.
+	Neighbours []string
+	// ClimateFills says that the mean of the date fills days that nothing better does.
+	ClimateFills bool
 	// Joined is not empty for a record that has no readings of its own but takes
 	// the daily values of other stations, one after another.
 	Joined []Member
+}
+
+// Medium is what a station measures the temperature of.
+type Medium string
+
+// The media. The index of a surface is a surface index, and no n-factor is
+// applied to it.
+const (
+	OfTheAir     Medium = "air"
+	OfTheSurface Medium = "surface"
+)
+
+// BaseFrom is a base temperature that holds from a date on.
+type BaseFrom struct {
+	From  MonthDay
+	BaseC float64
+}
+
+// BaseOn returns the base temperature of a day in degC.
+func (s *Station) BaseOn(d Day) float64 {
+	base := s.BaseC
+	if len(s.Bases) == 0 {
+		return base
+	}
+	year, _, _ := d.Date()
+	for _, b := range s.Bases {
+		if b.From.In(year) <= d {
+			base = b.BaseC
+		}
+	}
+	return base
 }
 
 // Fact is something that happened to a station.

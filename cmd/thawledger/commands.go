@@ -15,12 +15,16 @@ const usage = `thawledger keeps account of how much thaw each surface on frozen 
   thawledger settings check|show     look at the settings without starting anything
   thawledger schema [apply]          show the database's schema, or bring it up to date
   thawledger standing [SITE]         how surfaces stand against their design values
+  thawledger design [compute]        how the record stands against the design values; one from the record
+  thawledger ground                  thaw depth, freeze-back and permafrost measures by surface
   thawledger ledger                  what arrived and what became of it
   thawledger feed try FILE           what a feed would make of a file, or a layout for an unknown one
   thawledger feed read|reread|take   take a file by hand; read batches again; use one that waits
   thawledger edit ...                correct readings by hand, with author and reason; undo; list
   thawledger approve ...             answer for a record through a day; decide on late corrections
+  thawledger filling show|test       how missing days would be filled, and how far off that is
   thawledger station compare A B     two records side by side, and the adjustment that joins them
+  thawledger outlook [hindcast]      what seasons may come to; what such outlooks were worth
   thawledger version
 
 Each takes --help. Screening figures: local codes and a licensed engineer decide.
@@ -43,12 +47,20 @@ func (p program) run(ctx context.Context, args []string) error {
 		return p.schema(ctx, rest)
 	case "standing":
 		return p.standing(ctx, rest)
+	case "design":
+		return p.design(ctx, rest)
+	case "ground":
+		return p.ground(ctx, rest)
 	case "ledger":
 		return p.ledger(ctx, rest)
+	case "outlook":
+		return p.outlook(ctx, rest)
 	case "feed":
 		return p.feed(ctx, rest)
 	case "edit":
 		return p.edit(ctx, rest)
+	case "filling":
+		return p.filling(ctx, rest)
 	case "station":
 		return p.station(ctx, rest)
 	case "approve":

@@ -198,6 +198,9 @@ func (p program) load(file string) (*settings.Settings, error) {
 	for _, w := range warnings {
 		fmt.Fprintf(p.err, "warning: %s\n", w)
 	}
+	if err == nil {
+		err = withGround(set)
+	}
 	if err != nil {
 		return nil, err
 	}

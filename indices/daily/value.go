@@ -24,6 +24,15 @@ type Value struct {
 	Hours       int16 // rule hourly: hours with a value
 	LongestHole int16 // rule hourly: longest run of hours without one
 
+	// ErrorC is the standard error of a filled mean in degC, if HasError; From the
+	// station that it was filled from, if Origin is ByNeighbour.
+	ErrorC   float64
+	HasError bool
+	From     string
+
+	// TestsMade and TestsFailed are sets of quality tests, a bit a test.
+	TestsMade, TestsFailed uint32
+
 	// Quality is the worst mark of the values that the mean was made of, by the
 	// order good, not checked, changed, estimated, doubtful, inconsistent. It is
 	// estimated for an interpolated day and missing for a missing one.

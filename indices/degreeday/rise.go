@@ -35,7 +35,7 @@ func (t *Track) Rise(excessC []float64) {
 		if !isTemperature(x) {
 			panic(fmt.Sprintf("degreeday: excess %v at place %d is not a difference of temperatures", x, i))
 		}
-		r.step(x)
+		r.step(x, max(x, 0))
 		t.Running[i], t.ToDate[i], t.Sum[i] = r.running, r.toDate, r.sum
 	}
 	t.First, t.Last = r.first, r.last
@@ -73,8 +73,8 @@ type rise struct {
 
 func newRise() rise { return rise{first: -1, last: -1, firstPos: -1, lastPos: -1} }
 
-// step adds a day.
-func (r *rise) step(excessC float64) {
+// step adds a day: its excess, and what it adds to the sum.
+func (r *rise) step(excessC, positiveC float64) {
 	i := r.days
 	r.days++
 	r.sinceLow.add(excessC)
@@ -85,9 +85,11 @@ func (r *rise) step(excessC float64) {
 	case r.running > r.toDate:
 		r.toDate, r.first, r.last = r.running, r.begin, i
 	}
-	if excessC > 0 {
-		r.positive.add(excessC)
+	if positiveC > 0 {
+		r.positive.add(positiveC)
 		r.sum = r.positive.value()
+	}
+	if excessC > 0 {
 		if r.firstPos < 0 {
 			r.firstPos = i
 		}

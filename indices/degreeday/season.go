@@ -12,13 +12,19 @@ type Bounds struct{ Low, High float64 }
 // Known reports whether the two are the same, so that no gap leaves the number open.
 func (b Bounds) Known() bool { return b.Low == b.High }
 
-// DayMean is a day's mean temperature in degC. An observed or interpolated day
-// has MeanC, and LowC and HighC are equal to it; a missing day has no MeanC, and
+// DayMean is a day's mean temperature in degC. An observed or filled day has
+// MeanC, and LowC and HighC are equal to it; a missing day has no MeanC, and
 // LowC and HighC are the lowest and the highest mean that are plausible.
+//
+// A filled day whose error is known has AboveC and BelowC: the expected excess
+// above the base, and below it, which is more than the excess of its mean where
+// the base is within reach of the error. The sum indices count these.
 type DayMean struct {
 	Day                pipeline.Day
 	Origin             pipeline.Origin
 	MeanC, LowC, HighC float64
+	HasError           bool
+	AboveC, BelowC     float64 // if HasError
 }
 
 // DayIndex is what the indices have come to at the end of a day, in degC.d.
@@ -64,8 +70,8 @@ type Season struct {
 	Days       []DayIndex   // from Window.First to Through
 	Curve, Sum Result
 
-	Observed, Interpolated, Missing int // days
-	LongestGap                      int // longest run of days not observed
+	Observed, Interpolated, ByNeighbour, ByClimate, Missing int // days
+	LongestGap                                              int // longest run of days not observed
 }
 
 // Complete reports whether the season is over and no day of it is missing.
@@ -97,6 +103,12 @@ func Build(kind pipeline.Kind, w Window, label string, baseC float64, days []Day
 		case pipeline.Interpolated:
 			s.Interpolated++
 			gap++
+		case pipeline.ByNeighbour:
+			s.ByNeighbour++
+			gap++
+		case pipeline.ByClimate:
+			s.ByClimate++
+			gap++
 		case pipeline.Missing:
 			if s.Missing == 0 {
 				high = low // until here the two fillings are one
@@ -106,10 +118,18 @@ func Build(kind pipeline.Kind, w Window, label string, baseC float64, days []Day
 		}
 		s.LongestGap = max(s.LongestGap, gap)
 		lowX, highX := m.excess(kind, baseC)
-		low.step(lowX)
+		lowPos, highPos := max(lowX, 0), max(highX, 0)
+		if m.HasError {
+			lowPos = m.AboveC
+			if kind == pipeline.Freeze {
+				lowPos = m.BelowC
+			}
+			highPos = lowPos
+		}
+		low.step(lowX, lowPos)
 		top := &low
 		if s.Missing > 0 {
-			high.step(highX)
+			high.step(highX, highPos)
 			top = &high
 		}
 		s.Days[i] = DayIndex{
@@ -167,9 +187,12 @@ func check(kind pipeline.Kind, w Window, baseC float64, days []DayMean, recordEn
 			panic(fmt.Sprintf("degreeday: day %s in place of %s; days must be consecutive", m.Day, want))
 		}
 		switch m.Origin {
-		case pipeline.Observed, pipeline.Interpolated:
+		case pipeline.Observed, pipeline.Interpolated, pipeline.ByNeighbour, pipeline.ByClimate:
 			if !isTemperature(m.MeanC) {
 				panic(fmt.Sprintf("degreeday: mean %v degC of %s is not a temperature", m.MeanC, m.Day))
+			}
+			if m.HasError && !(m.Origin.Filled() && isTemperature(m.AboveC) && isTemperature(m.BelowC) && m.AboveC >= 0 && m.BelowC >= 0) {
+				panic(fmt.Sprintf("degreeday: expected excesses %v and %v degC of %s day %s", m.AboveC, m.BelowC, m.Origin, m.Day))
 			}
 		case pipeline.Missing:
 			if !isTemperature(m.LowC) || !isTemperature(m.HighC) || m.LowC > m.HighC {

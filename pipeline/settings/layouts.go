@@ -161,9 +161,10 @@ func (r *reader) stationColumn(o *object) pipeline.StationColumn {
 func (r *reader) valueColumn(o *object, missing []string) pipeline.ValueColumn {
 	level := 1.5
 	v := pipeline.ValueColumn{
-		When:     o.when(),
-		Variable: oneOf(o, "variable", "", "air_temp_mean", "air_temp_max", "air_temp_min", "air_temp"),
-		Unit:     oneOf(o, "unit", "", pipeline.TempUnits...), UnitText: o.textOr("unit_text", ""),
+		When: o.when(),
+		Variable: oneOf(o, "variable", "", "air_temp_mean", "air_temp_max", "air_temp_min", "air_temp",
+			"surface_temp_mean", "surface_temp_max", "surface_temp_min", "surface_temp"),
+		Unit: oneOf(o, "unit", "", pipeline.TempUnits...), UnitText: o.textOr("unit_text", ""),
 		Sensor: o.textOr("sensor", "air"), LevelM: o.number("level_m", &level, -500, 500),
 		Missing: slices.Concat(missing, o.texts("missing")),
 	}

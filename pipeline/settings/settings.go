@@ -31,6 +31,7 @@ type Settings struct {
 	defaulted map[string]bool
 	order     []string // layouts in the order of the file
 	urlFile   string
+	places    places
 }
 
 // Store says where the database is.
@@ -90,7 +91,7 @@ func Load(path string, checks ...Check) (*Settings, []Warning, error) {
 // folder that relative names in it are relative to.
 func Parse(name string, data []byte, base string, checks ...Check) (*Settings, []Warning, error) {
 	r := &reader{file: name, defaulted: map[string]bool{}}
-	s := &Settings{Layouts: map[string]*pipeline.Layout{}, defaulted: r.defaulted}
+	s := &Settings{Layouts: map[string]*pipeline.Layout{}, defaulted: r.defaulted, places: places{file: name}}
 	if root := r.root(data); root != nil {
 		r.read(s, root, base)
 		if len(r.faults) == 0 {

@@ -199,6 +199,15 @@ func writeStation(t *tree, st *pipeline.Station) {
 	}
 	t.number("base_c", st.BaseC)
 	t.number("fill_days", float64(st.FillDays))
+	if len(st.Bases) > 0 {
+		t.list("base_by_date", len(st.Bases), func(i int, t *tree) {
+			t.text("from", st.Bases[i].From.String())
+			t.number("base_c", st.Bases[i].BaseC)
+		})
+	}
+	t.text("measures", string(st.Measures))
+	t.texts("neighbours", st.Neighbours)
+	t.yes("climatology_fills", st.ClimateFills)
 	t.text("thaw_year", st.ThawYear.String())
 	t.text("freeze_year", st.FreezeYear.String())
 	if len(st.Facts) > 0 {
@@ -279,15 +288,25 @@ func writeSite(t *tree, site *pipeline.Site) {
 			t.text("kind", string(f.Kind))
 			t.text("from", f.From.String())
 			t.number("value", f.Value)
+			if f.Low != f.High {
+				t.number("low", f.Low)
+				t.number("high", f.High)
+			}
 			t.text("source", f.Source)
 		})
+		t.word("measured_by", s.MeasuredBy)
+		writeGround(t, s.Ground)
 		t.list("design_values", len(s.Designs), func(i int, t *tree) {
 			d := &s.Designs[i]
 			t.text("kind", string(d.Kind))
 			t.text("definition", string(d.Definition))
 			t.text("of", string(d.Of))
-			t.number("index", d.Index)
-			t.text("unit", string(d.Unit))
+			if d.DepthM != nil {
+				t.number("depth_m", *d.DepthM)
+			} else {
+				t.number("index", d.Index)
+				t.text("unit", string(d.Unit))
+			}
 			t.number("base_c", d.BaseC)
 			t.text("direction", string(d.Direction))
 			t.text("from", d.From.String())

@@ -35,6 +35,7 @@ func (r *reader) readSites(s *Settings, o *object, stations map[string]*pipeline
 		}
 		seen[site.ID] = n
 		s.Sites = append(s.Sites, site)
+		s.places.sites = append(s.places.sites, n)
 	})
 }
 
@@ -49,7 +50,7 @@ func (r *reader) site(o *object, stations map[string]*pipeline.Station) pipeline
 	}
 	seen := map[string]*yaml.Node{}
 	if o.list("surfaces", func(n *yaml.Node, path string) {
-		surface := r.surface(r.object(n, path, n), st)
+		surface := r.surface(r.object(n, path, n), st, stations)
 		if first, ok := seen[surface.ID]; ok && surface.ID != "" {
 			r.fault(n, path, "give each surface of a site an id of its own", "surface %s stands in line %d already", surface.ID, first.Line)
 			return
@@ -63,7 +64,7 @@ func (r *reader) site(o *object, stations map[string]*pipeline.Station) pipeline
 	return site
 }
 
-func (r *reader) surface(o *object, st *pipeline.Station) pipeline.Surface {
+func (r *reader) surface(o *object, st *pipeline.Station, stations map[string]*pipeline.Station) pipeline.Surface {
 	s := pipeline.Surface{ID: o.id("id"), Name: o.textOr("name", "")}
 	if s.Name == "" {
 		s.Name = s.ID
@@ -78,6 +79,8 @@ func (r *reader) surface(o *object, st *pipeline.Station) pipeline.Surface {
 		}
 		s.Factors = append(s.Factors, f)
 	})
+	s.MeasuredBy = r.measuredBy(o, stations)
+	s.Ground = r.ground(o)
 	designs := map[string]bool{}
 	if o.list("design_values", func(n *yaml.Node, path string) {
 		d := r.designValue(r.object(n, path, n), st)
@@ -90,6 +93,9 @@ func (r *reader) surface(o *object, st *pipeline.Station) pipeline.Surface {
 		if d.Of == pipeline.OfSurface && !hasFactor {
 			r.fault(n, path, fmt.Sprintf("give the surface an n-factor for %s, or a design value of the air", d.Kind),
 				"it limits the surface index, which needs an n-factor for %s", d.Kind)
+		}
+		if d.DepthM != nil && len(s.Ground) == 0 {
+			r.fault(n, path, "give the surface its ground, or state an index", "it is a depth of thaw, and nothing is known of the ground")
 		}
 		s.Designs = append(s.Designs, d)
 	}) == nil && !o.has("design_values") {
@@ -120,6 +126,7 @@ func (r *reader) nFactor(o *object) pipeline.NFactor {
 		Kind: oneOf(o, "kind", "", pipeline.Thaw, pipeline.Freeze), From: o.from(), Value: o.number("value", nil, 0.01, 5),
 		Source: o.text("source", "say where it was taken from"),
 	}
+	r.nRange(o, &f)
 	o.done()
 	return f
 }
@@ -128,10 +135,11 @@ func (r *reader) designValue(o *object, st *pipeline.Station) pipeline.DesignVal
 	base, near := 0.0, 0.9
 	d := pipeline.DesignValue{
 		Kind: oneOf(o, "kind", "", pipeline.Thaw, pipeline.Freeze), Definition: oneOf(o, "definition", "", pipeline.Definitions...),
-		Of: oneOf(o, "of", "", pipeline.OfSurface, pipeline.OfAir), Index: o.number("index", nil, 0.001, 1e7), Unit: o.indexUnit(),
+		Of:    oneOf(o, "of", "", pipeline.OfSurface, pipeline.OfAir),
 		BaseC: o.number("base_c", &base, -20, 20), Direction: oneOf(o, "direction", "", pipeline.NotAbove, pipeline.NotBelow),
 		From: o.from(), NearShare: o.number("near_share", &near, 0.01, 1), Source: o.text("source", "name the document that states it"),
 	}
+	o.limit(&d)
 	o.done()
 	if o.bad {
 		return d
@@ -142,7 +150,11 @@ func (r *reader) designValue(o *object, st *pipeline.Station) pipeline.DesignVal
 	if d.Definition == pipeline.NotStated && o.has("definition") {
 		r.warn(o.vals["definition"], o.at("definition"), "the definition is not stated: it is compared with the curve index, and the sum is shown beside it")
 	}
-	if st != nil {
+	if st != nil && len(st.Bases) > 0 {
+		r.fault(o.node, o.path, "draw on a station without base_by_date", "the base of station %s changes within the year: its index is kept apart and compared with no design value", st.ID)
+	} else if st != nil && st.Measures == pipeline.OfTheSurface {
+		r.fault(o.node, o.path, "draw on a station that measures the air, and write measured_by at the surface", "station %s measures a surface", st.ID)
+	} else if st != nil {
 		if err := d.Comparable(st.BaseC); err != nil {
 			right := "state it as curve or sum, or take the value out"
 			at := o.vals["definition"]

@@ -55,6 +55,7 @@ func (r *reader) readStations(s *Settings, o *object, within func(string) string
 		out[s.Stations[i].ID] = &s.Stations[i]
 	}
 	r.joinedRecords(s, out, seen)
+	r.neighboursOf(s, out, seen)
 	return out
 }
 
@@ -96,6 +97,7 @@ func (r *reader) station(o *object) pipeline.Station {
 	}
 	st.ThawYear, st.FreezeYear = o.monthDay("thaw_year", thaw), o.monthDay("freeze_year", freeze)
 	st.Facts = r.facts(o)
+	r.stationFills(o, &st)
 	o.done()
 	return st
 }

@@ -190,7 +190,7 @@ func (db *DB) Pending(ctx context.Context) (Pending, error) {
 	err := db.pool.QueryRow(ctx, `select
 		(select count(*) from thaw.batches where state = 'opened'),
 		(select count(*) from thaw.batch_parts p where `+open+`),
-		(select count(*) from thaw.stations where recompute or reindex),
+		(select count(*) from thaw.stations where recompute or reindex or refill),
 		(select count(*) from thaw.withdrawals),
 		(select count(*) from thaw.changes),
 		(select count(*) from thaw.standing_changes where announce and announced_at is null),

@@ -133,13 +133,19 @@ type SeasonRow struct {
 	OnsetProvisional         bool
 	Observed, Interpolated   int
 	Missing, LongestGap      int
+	Neighbour, Climate       int
+	ErrorC                   *float64 // standard error of the index, degC.d; nil where no day is filled
+	Doubtful                 int
+	Without                  *[2]float64 // lowest and highest index without doubtful days; nil without any
+	Homogeneous              bool
 	Rule                     pipeline.MeanRule
 	BaseC                    float64
 }
 
 var seasonColumns = []string{"station", "kind", "definition", "season_start", "season", "index_c_days", "index_low_c_days", "index_high_c_days",
 	"start_day", "end_day", "through_day", "season_over", "complete", "no_season", "edge_provisional", "onset_provisional",
-	"days_observed", "days_interpolated", "days_missing", "longest_gap_days", "mean_rule", "base_c"}
+	"days_observed", "days_interpolated", "days_missing", "longest_gap_days", "mean_rule", "base_c",
+	"days_neighbour", "days_climatology", "standard_error_c_days", "days_doubtful", "without_doubtful_low_c_days", "without_doubtful_high_c_days", "homogeneous"}
 
 // WriteSeasons puts rows in the place of those with the same kind and start.
 func (t *Take) WriteSeasons(ctx context.Context, rows []SeasonRow) error {
@@ -154,9 +160,14 @@ func (t *Take) WriteSeasons(ctx context.Context, rows []SeasonRow) error {
 	}
 	_, err = t.tx.CopyFrom(ctx, pgx.Identifier{"thaw", "air_index_season"}, seasonColumns, pgx.CopyFromSlice(len(rows), func(i int) ([]any, error) {
 		r := &rows[i]
+		var without [2]*float64
+		if r.Without != nil {
+			without = [2]*float64{&r.Without[0], &r.Without[1]}
+		}
 		return []any{t.station, string(r.Kind), string(r.Definition), r.Start.Time(), r.Label, known(r.Low, r.High), r.Low, r.High,
 			dateOf(r.FirstDay), dateOf(r.LastDay), r.Through.Time(), r.Over, r.Complete, r.NoSeason, r.EdgeProvisional, r.OnsetProvisional,
-			r.Observed, r.Interpolated, r.Missing, r.LongestGap, string(r.Rule), r.BaseC}, nil
+			r.Observed, r.Interpolated, r.Missing, r.LongestGap, string(r.Rule), r.BaseC,
+			r.Neighbour, r.Climate, r.ErrorC, r.Doubtful, without[0], without[1], r.Homogeneous}, nil
 	}))
 	if err != nil {
 		return fmt.Errorf("write seasons of %s: %w", t.station, err)

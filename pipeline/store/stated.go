@@ -1,6 +1,7 @@
 package store
 
 import (
+	"cmp"
 	"context"
 	"fmt"
 	"slices"
@@ -40,7 +41,7 @@ func (db *DB) State(ctx context.Context, s Stated) error {
 		if err != nil {
 			return fmt.Errorf("record settings: %w", err)
 		}
-		for _, f := range []func(context.Context, pgx.Tx, Stated) error{stateStations, stateHistory, stateMembers, stateFeeds, stateSites} {
+		for _, f := range []func(context.Context, pgx.Tx, Stated) error{stateStations, stateHistory, stateMembers, stateNeighbours, stateFeeds, stateSites} {
 			if err := f(ctx, tx, s); err != nil {
 				return err
 			}
@@ -53,24 +54,29 @@ func stateStations(ctx context.Context, tx pgx.Tx, s Stated) error {
 	for _, st := range s.Stations {
 		_, err := tx.Exec(ctx, `insert into thaw.stations as o (station, name, latitude_deg, longitude_deg, elevation_m,
 				utc_offset_s, day_starts_s, mean_rule, min_hours, max_hole_hours, base_c, fill_days,
-				thaw_year_starts, freeze_year_starts)
-			values ($1, $2, $3, $4, $5, $6, $7, $8, $9, $10, $11, $12, $13, $14)
+				thaw_year_starts, freeze_year_starts, measures, bases, climatology_fills)
+			values ($1, $2, $3, $4, $5, $6, $7, $8, $9, $10, $11, $12, $13, $14, $15, $16, $17)
 			on conflict (station) do update set
 				name = excluded.name, latitude_deg = excluded.latitude_deg, longitude_deg = excluded.longitude_deg,
 				elevation_m = excluded.elevation_m, utc_offset_s = excluded.utc_offset_s,
 				day_starts_s = excluded.day_starts_s, mean_rule = excluded.mean_rule, min_hours = excluded.min_hours,
 				max_hole_hours = excluded.max_hole_hours, base_c = excluded.base_c, fill_days = excluded.fill_days,
 				thaw_year_starts = excluded.thaw_year_starts, freeze_year_starts = excluded.freeze_year_starts,
+				measures = excluded.measures, bases = excluded.bases, climatology_fills = excluded.climatology_fills,
 				recorded_at = clock_timestamp(),
 				recompute = o.recompute or
-					(o.utc_offset_s, o.day_starts_s, o.mean_rule, o.min_hours, o.max_hole_hours, o.base_c, o.fill_days,
-					 o.thaw_year_starts, o.freeze_year_starts)
+					(o.utc_offset_s, o.day_starts_s, o.mean_rule, o.min_hours, o.max_hole_hours, o.measures)
 					is distinct from
 					(excluded.utc_offset_s, excluded.day_starts_s, excluded.mean_rule, excluded.min_hours,
-					 excluded.max_hole_hours, excluded.base_c, excluded.fill_days,
-					 excluded.thaw_year_starts, excluded.freeze_year_starts)`,
+					 excluded.max_hole_hours, excluded.measures),
+				reindex = o.reindex or
+					(o.base_c, o.fill_days, o.thaw_year_starts, o.freeze_year_starts, o.bases, o.climatology_fills)
+					is distinct from
+					(excluded.base_c, excluded.fill_days, excluded.thaw_year_starts, excluded.freeze_year_starts, excluded.bases,
+					 excluded.climatology_fills)`,
 			st.ID, st.Name, st.LatitudeD, st.LongitudeD, st.ElevationM, int32(st.UTCOffset.Seconds()), int32(st.DayStarts.Seconds()),
-			string(st.Mean), st.MinHours, st.MaxHole, st.BaseC, st.FillDays, st.ThawYear.String(), st.FreezeYear.String())
+			string(st.Mean), st.MinHours, st.MaxHole, st.BaseC, st.FillDays, st.ThawYear.String(), st.FreezeYear.String(),
+			string(cmp.Or(st.Measures, pipeline.OfTheAir)), basesText(st.Bases), st.ClimateFills)
 		if err != nil {
 			return fmt.Errorf("state station %s: %w", st.ID, err)
 		}
@@ -143,8 +149,8 @@ func stateSites(ctx context.Context, tx pgx.Tx, s Stated) error {
 // stateSurface returns the rows that are in force for the surface and whether
 // any of them is new.
 func stateSurface(ctx context.Context, tx pgx.Tx, site string, s pipeline.Surface) (designs, factors []int64, changed bool, err error) {
-	_, err = tx.Exec(ctx, `insert into thaw.surfaces (site, surface, name) values ($1, $2, $3)
-		on conflict (site, surface) do update set name = excluded.name`, site, s.ID, s.Name)
+	_, err = tx.Exec(ctx, `insert into thaw.surfaces (site, surface, name, measured_by) values ($1, $2, $3, nullif($4, ''))
+		on conflict (site, surface) do update set name = excluded.name, measured_by = excluded.measured_by`, site, s.ID, s.Name, s.MeasuredBy)
 	if err != nil {
 		return nil, nil, false, fmt.Errorf("state surface %s/%s: %w", site, s.ID, err)
 	}
@@ -152,9 +158,11 @@ func stateSurface(ctx context.Context, tx pgx.Tx, site string, s pipeline.Surfac
 	// before the new one takes its place.
 	for _, n := range s.Factors {
 		id, isNew, err := keepOrReplace(ctx, tx, "n_factor", `site = @site and surface = @surface and kind = @kind and valid_from = @from`,
-			`n_factor = @value and source = @source`,
-			`(site, surface, kind, valid_from, n_factor, source) values (@site, @surface, @kind, @from, @value, @source)`,
-			pgx.NamedArgs{"site": site, "surface": s.ID, "kind": string(n.Kind), "from": n.From.Time(), "value": n.Value, "source": n.Source})
+			`n_factor = @value and source = @source and coalesce(n_low, n_factor) = @low and coalesce(n_high, n_factor) = @high`,
+			`(site, surface, kind, valid_from, n_factor, source, n_low, n_high)
+			 values (@site, @surface, @kind, @from, @value::float8, @source, nullif(@low::float8, @value), nullif(@high::float8, @value))`,
+			pgx.NamedArgs{"site": site, "surface": s.ID, "kind": string(n.Kind), "from": n.From.Time(), "value": n.Value, "source": n.Source,
+				"low": cmp.Or(n.Low, n.Value), "high": cmp.Or(n.High, n.Value)})
 		if err != nil {
 			return nil, nil, false, fmt.Errorf("state n-factor of %s/%s: %w", site, s.ID, err)
 		}

@@ -56,18 +56,28 @@ func (db *DB) Reindexes(ctx context.Context) ([]string, error) {
 	return pgx.CollectRows(rows, pgx.RowTo[string])
 }
 
-// Reindexed takes that mark off.
+// Refills returns the stations that are marked for nothing but to be filled anew.
+func (db *DB) Refills(ctx context.Context) ([]string, error) {
+	rows, err := db.pool.Query(ctx, `select station from thaw.stations where refill and not reindex and not recompute order by station`)
+	if err != nil {
+		return nil, fmt.Errorf("read stations to be filled anew: %w", err)
+	}
+	return pgx.CollectRows(rows, pgx.RowTo[string])
+}
+
+// Reindexed takes the marks off that asked for gaps to be filled, or indices to
+// be worked out, anew.
 func (t *Take) Reindexed(ctx context.Context) error {
-	_, err := t.tx.Exec(ctx, `update thaw.stations set reindex = false where station = $1 and reindex`, t.station)
+	_, err := t.tx.Exec(ctx, `update thaw.stations set reindex = false, refill = false where station = $1 and (reindex or refill)`, t.station)
 	if err != nil {
 		return fmt.Errorf("take mark off station %s: %w", t.station, err)
 	}
 	return nil
 }
 
-// Recomputed takes both marks off.
+// Recomputed takes all marks off.
 func (t *Take) Recomputed(ctx context.Context) error {
-	_, err := t.tx.Exec(ctx, `update thaw.stations set recompute = false, reindex = false where station = $1 and (recompute or reindex)`, t.station)
+	_, err := t.tx.Exec(ctx, `update thaw.stations set recompute = false, reindex = false, refill = false where station = $1 and (recompute or reindex or refill)`, t.station)
 	if err != nil {
 		return fmt.Errorf("take mark off station %s: %w", t.station, err)
 	}
@@ -80,12 +90,13 @@ func (t *Take) Station(ctx context.Context) (*pipeline.Station, error) {
 	var (
 		offset, starts         int32
 		mean, thawIn, freezeIn string
+		bases                  string
 		s                      = &pipeline.Station{ID: t.station}
 	)
 	err := t.tx.QueryRow(ctx, `select name, latitude_deg, longitude_deg, elevation_m, utc_offset_s, day_starts_s,
-			mean_rule, min_hours, max_hole_hours, base_c, fill_days, thaw_year_starts, freeze_year_starts
+			mean_rule, min_hours, max_hole_hours, base_c, fill_days, thaw_year_starts, freeze_year_starts, measures, bases, climatology_fills
 		from thaw.stations where station = $1`, t.station).Scan(&s.Name, &s.LatitudeD, &s.LongitudeD, &s.ElevationM, &offset, &starts,
-		&mean, &s.MinHours, &s.MaxHole, &s.BaseC, &s.FillDays, &thawIn, &freezeIn)
+		&mean, &s.MinHours, &s.MaxHole, &s.BaseC, &s.FillDays, &thawIn, &freezeIn, &s.Measures, &bases, &s.ClimateFills)
 	if errors.Is(err, pgx.ErrNoRows) {
 		return nil, fmt.Errorf("station %s is not in the settings", t.station)
 	}
@@ -101,6 +112,12 @@ func (t *Take) Station(ctx context.Context) (*pipeline.Station, error) {
 		if _, err := fmt.Sscanf(m.text, "%02d-%02d", &m.into.Month, &m.into.Day); err != nil {
 			return nil, fmt.Errorf("read station %s: %q is not a month and day", t.station, m.text)
 		}
+	}
+	if s.Bases, err = parseBases(bases); err != nil {
+		return nil, fmt.Errorf("read station %s: %w", t.station, err)
+	}
+	if s.Neighbours, err = neighbours(ctx, t.tx, t.station); err != nil {
+		return nil, err
 	}
 	s.Joined, err = t.members(ctx)
 	return s, err

@@ -11,6 +11,9 @@ comment on column thaw.stations.bases is 'Base temperatures by date, as "02-01 -
 alter table thaw.stations add column reindex boolean not null default false;
 comment on column thaw.stations.reindex is 'The indices wait to be worked out anew from the daily values.';
 
+alter table thaw.stations add column refill boolean not null default false;
+comment on column thaw.stations.refill is 'Its missing days wait to be filled anew: a neighbour''s observed days have changed.';
+
 create table thaw.station_neighbours (
     station   text collate "C" not null references thaw.stations,
     place     smallint not null,
