@@ -56,14 +56,14 @@ func (s *Service) take(ctx context.Context, station string, parts []*pipeline.Pa
 // now in force, and takes the mark that asked for it off.
 func (s *Service) Recompute(ctx context.Context, station string) error {
 	err := s.DB.TakeStation(ctx, station, func(t *store.Take) error {
+		if err := t.Recomputed(ctx); err != nil {
+			return err
+		}
 		st, err := t.Station(ctx)
 		if err != nil {
 			return err
 		}
-		if err := s.makeAnew(ctx, t, st); err != nil {
-			return err
-		}
-		return t.Recomputed(ctx)
+		return s.makeAnew(ctx, t, st)
 	})
 	if errors.Is(err, store.ErrBusy) {
 		return nil // looked at again later
@@ -89,6 +89,9 @@ func (s *Service) Refill(ctx context.Context, station string) error {
 
 func (s *Service) refill(ctx context.Context, station string, all bool) error {
 	err := s.DB.TakeStation(ctx, station, func(t *store.Take) error {
+		if err := t.Reindexed(ctx); err != nil {
+			return err
+		}
 		st, err := t.Station(ctx)
 		if err != nil {
 			return err
@@ -97,10 +100,7 @@ func (s *Service) refill(ctx context.Context, station string, all bool) error {
 		if err != nil {
 			return err
 		}
-		if err := s.write(ctx, t, st, stored, merge(stored, nil), all); err != nil {
-			return err
-		}
-		return t.Reindexed(ctx)
+		return s.write(ctx, t, st, stored, merge(stored, nil), all)
 	})
 	if errors.Is(err, store.ErrBusy) {
 		return nil // looked at again later

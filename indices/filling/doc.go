@@ -19,6 +19,6 @@
 // part of the error is common to all days of a year: neither averages out as
 // independent errors would, and IndexError counts both.
 //
-// It promises: the same result for the same input, bit for bit; no NaN or
+// It promises: the same result for the same input; no NaN or
 // infinity; not ok rather than a guess where the record is too short.
 package filling

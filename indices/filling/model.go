@@ -99,9 +99,9 @@ func (m *Model) FillClimate(d pipeline.Day) (meanC, seC float64, ok bool) {
 	return m.climate.estimate(place, month, 0)
 }
 
-// FillLine estimates a day on the straight line between two observed days, not
-// more than Options.LineDays apart from each other's neighbours. ok is false if
-// they are, or the record has too few stretches to tell the error.
+// FillLine estimates a day on the straight line between two observed days. ok is
+// false if more than Options.LineDays days lie between them, or the record has too
+// few stretches like it to tell the error.
 func (m *Model) FillLine(before, after Point, d pipeline.Day) (meanC, seC float64, ok bool) {
 	n := int(after.Day-before.Day) - 1
 	if d <= before.Day || d >= after.Day || n > m.opt.LineDays {

@@ -7,10 +7,11 @@ import (
 	"thawledger/indices/degreeday"
 )
 
-// Paths are how many sets of errors are drawn where a season's low or high is in
+// As many sets of errors as paths are drawn where a season's low or high is in
 // question: the standard error then is known to about 1/sqrt(2 paths), 1.1 %, and
-// less well where few sets touch the index at all. A place further above the low (below the high) than farSE standard errors of what is
-// between them is not in question.
+// less well where few sets touch the index at all. A place further above the low
+// (below the high) than farSE standard errors of what is between them is not in
+// question.
 const (
 	paths = 4000
 	farSE = 5

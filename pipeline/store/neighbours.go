@@ -51,10 +51,11 @@ func neighbours(ctx context.Context, q querier, station string) ([]string, error
 }
 
 // MarkNeighbours marks the stations that are filled from this one to be filled
-// anew: its observed days are not what they were.
+// anew: its observed days are not what they were. They are marked even if they
+// are already, see Reindexed.
 func (t *Take) MarkNeighbours(ctx context.Context) error {
 	_, err := t.tx.Exec(ctx, `update thaw.stations set refill = true
-		where station in (select station from thaw.station_neighbours where neighbour = $1) and not refill`, t.station)
+		where station in (select station from thaw.station_neighbours where neighbour = $1)`, t.station)
 	if err != nil {
 		return fmt.Errorf("mark stations filled from %s: %w", t.station, err)
 	}

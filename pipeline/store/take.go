@@ -66,7 +66,9 @@ func (db *DB) Refills(ctx context.Context) ([]string, error) {
 }
 
 // Reindexed takes the marks off that asked for gaps to be filled, or indices to
-// be worked out, anew.
+// be worked out, anew. It comes before anything is read: a station that sets the
+// mark meanwhile waits for this transaction, and one that has set it is waited
+// for, so that either its days are seen or its mark stays.
 func (t *Take) Reindexed(ctx context.Context) error {
 	_, err := t.tx.Exec(ctx, `update thaw.stations set reindex = false, refill = false where station = $1 and (reindex or refill)`, t.station)
 	if err != nil {
@@ -75,7 +77,7 @@ func (t *Take) Reindexed(ctx context.Context) error {
 	return nil
 }
 
-// Recomputed takes all marks off.
+// Recomputed takes all marks off. It comes before anything is read: see Reindexed.
 func (t *Take) Recomputed(ctx context.Context) error {
 	_, err := t.tx.Exec(ctx, `update thaw.stations set recompute = false, reindex = false, refill = false where station = $1 and (recompute or reindex or refill)`, t.station)
 	if err != nil {
@@ -190,11 +192,11 @@ func (t *Take) CommitParts(ctx context.Context, parts []*pipeline.Part, fates []
 }
 
 // AddChange leaves a line for the judge: surfaces on this station are to be
-// judged from a day on.
-// Records that are joined from this one and others are to be made anew.
+// judged from a day on. Records that are joined from this one and others are to
+// be made anew; they are marked even if they are already, see Reindexed.
 func (t *Take) AddChange(ctx context.Context, from pipeline.Day) error {
 	_, err := t.tx.Exec(ctx, `update thaw.stations set recompute = true
-		where station in (select station from thaw.station_members where member = $1) and not recompute`, t.station)
+		where station in (select station from thaw.station_members where member = $1)`, t.station)
 	if err != nil {
 		return fmt.Errorf("mark records joined from %s: %w", t.station, err)
 	}
