@@ -118,19 +118,38 @@ func (s *Service) judgeSeason(ctx context.Context, j *store.Judging, d *store.De
 		}
 		compared[i] = judge.Day{Day: x.Day, Low: factor * low, High: factor * high}
 	}
-	v := judge.Season(judge.Design{CDays: d.CDays, NearShare: d.NearShare, Direction: d.Direction}, compared, season.Over)
+	before, err := j.Standing(ctx, d.ID, season.Start)
+	if err != nil {
+		return err
+	}
+	var made *store.OutlookRow
+	if !season.Over {
+		if made, err = j.Outlook(ctx, d.ID, season.Start); err != nil {
+			return err
+		}
+	}
+	var outlook *judge.Outlook
+	if made != nil {
+		low, high := made.Adverse(d.Direction)
+		outlook = &judge.Outlook{Low: low, High: high, Skilful: made.AnnouncedAllowed}
+	}
+	v := judge.Season(judge.Design{CDays: d.CDays, NearShare: d.NearShare, Direction: d.Direction}, compared, season.Over,
+		outlook, before != nil && before.Expected)
 	row := &store.StandingRow{
 		Design: d, Season: season.Start, Label: season.Label, Day: season.Through, State: v.State, Level: v.Level,
 		Straddles: v.Straddles, Low: v.Low, High: v.High, Factor: n, NearOn: v.NearOn, ExceededOn: v.ExceededOn,
 		ConfirmedOn: v.ConfirmedOn, Interpolated: season.Interpolated, Missing: season.Missing, Over: season.Over,
+		Outlook: made,
 	}
 	if d.Definition == pipeline.NotStated {
 		sum := factor * days[len(days)-1].SumLow
 		row.SumBeside = &sum
 	}
-	before, err := j.Standing(ctx, d.ID, season.Start)
-	if err != nil {
-		return err
+	if v.Expected {
+		row.ExpectedOn = &made.Through
+		if before != nil && before.ExpectedOn != nil {
+			row.ExpectedOn = before.ExpectedOn
+		}
 	}
 	exceedance, err := s.keepExceedance(ctx, j, row, before)
 	if err != nil {
@@ -143,7 +162,7 @@ func (s *Service) judgeSeason(ctx context.Context, j *store.Judging, d *store.De
 	var past *judge.Past
 	if before != nil {
 		change.From = before.State
-		past = &judge.Past{State: before.State, Straddles: before.Straddles}
+		past = &judge.Past{State: before.State, Level: before.Level, Straddles: before.Straddles, Expected: before.Expected}
 	}
 	replaced := false
 	if before == nil {
@@ -165,7 +184,7 @@ func (s *Service) judgeSeason(ctx context.Context, j *store.Judging, d *store.De
 // keepExceedance opens, changes or withdraws the exceedance of a standing and
 // returns its number; 0 if there is none.
 func (s *Service) keepExceedance(ctx context.Context, j *store.Judging, row *store.StandingRow, before *store.Before) (int64, error) {
-	above := row.Level != pipeline.LevelWithin || row.State == pipeline.FellShort
+	above := row.Level != pipeline.LevelWithin || row.State == pipeline.FellShort || row.ExpectedOn != nil
 	var id int64
 	if before != nil {
 		id = before.Exceedance

@@ -34,7 +34,8 @@ type Service struct {
 	// Workers is how many stations are in work at a time.
 	Workers int
 
-	models models
+	models    models
+	hindcasts hindcasts
 }
 
 // takeParts is how many messages are asked for in one go: with 500 readings in
@@ -170,7 +171,7 @@ func (s *Service) chores(intake, work context.Context) {
 	tick := time.NewTicker(time.Second)
 	defer tick.Stop()
 	for {
-		if err := errors.Join(s.recomputeMarked(intake, work), s.withdraw(intake, work)); err != nil && intake.Err() == nil {
+		if err := errors.Join(s.recomputeMarked(intake, work), s.withdraw(intake, work), s.makeOutlooks(intake, work)); err != nil && intake.Err() == nil {
 			s.Log.Warn("records not made anew, to be tried again", zap.Error(err))
 		}
 		select {

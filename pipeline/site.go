@@ -8,6 +8,9 @@ type Site struct {
 	Name     string
 	Station  string
 	Surfaces []Surface
+	Tags     []string // by which recipients may mean it
+	// Instructions say, by state, what to look at and whom to call.
+	Instructions map[State]string
 }
 
 // Surface is a part of a site with its own n-factors and design values.

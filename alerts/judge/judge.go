@@ -16,11 +16,34 @@ type Day struct {
 	Low, High float64
 }
 
+// Outlook is what is known of the rest of a season.
+type Outlook struct {
+	// Low and High are the chance that the season ends on the wrong side of the
+	// design value; they differ where missing days leave it open.
+	Low, High float64
+	Skilful   bool // outlooks of past seasons have shown skill at this lead
+}
+
+// ExpectedShare is the chance from which a season is expected to end on the
+// wrong side, and steadyShare that below which it is expected to no longer
+// (common practice, no source): a chance about the limit does not come and go.
+const (
+	ExpectedShare = 0.5
+	steadyShare   = 0.4
+)
+
+// expected says whether the season is expected to end on the wrong side, by the
+// lowest chance; was, whether it has been until now.
+func (o *Outlook) expected(was bool) bool {
+	return o != nil && o.Skilful && (o.Low >= ExpectedShare || was && o.Low >= steadyShare)
+}
+
 // Standing is how a season stands at its last day.
 type Standing struct {
 	State     pipeline.State
 	Level     pipeline.Level
 	Straddles bool // the design value lies above Low and at or below High
+	Expected  bool // to end on the wrong side, by an outlook with skill
 
 	Low, High float64 // index to date at the last day, degC.d
 
@@ -32,7 +55,9 @@ type Standing struct {
 // Season judges the days of one season, in order; over says that no day is to
 // come. It panics if there are no days.
 //
-// The state is the first that is true of exceeded, unknown, near and within. An
+// The state is the first that is true of exceeded, unknown, expected, near and
+// within; outlook may be nil, and was says whether the season has been expected
+// to end on the wrong side until now. An
 // index to date never falls, so a day's level holds for all later days. Where
 // missing days leave the index open its low bound decides the level, and
 // unknown says that a crossing may be hidden: unknown never takes the place of
@@ -40,9 +65,9 @@ type Standing struct {
 //
 // For the direction not_below the index to date is only a lower bound of the
 // season's: the season is within as soon as even the lowest index has reached
-// the design value, unknown until it is over, and has fallen short if even the
-// highest has not reached it by then.
-func Season(d Design, days []Day, over bool) Standing {
+// the design value, expected (to fall short) or unknown until it is over, and has
+// fallen short if even the highest has not reached it by then.
+func Season(d Design, days []Day, over bool, outlook *Outlook, was bool) Standing {
 	if len(days) == 0 {
 		panic("judge: a season without days")
 	}
@@ -50,9 +75,12 @@ func Season(d Design, days []Day, over bool) Standing {
 	s := Standing{Low: last.Low, High: last.High, Straddles: last.Low < d.CDays && d.CDays <= last.High}
 	if d.Direction == pipeline.NotBelow {
 		s.Level = pipeline.LevelWithin
+		s.Expected = !over && last.Low < d.CDays && outlook.expected(was)
 		switch {
 		case last.Low >= d.CDays:
 			s.State = pipeline.Within
+		case s.Expected:
+			s.State = pipeline.Expected
 		case !over || s.Straddles:
 			s.State = pipeline.Unknown
 		default:
@@ -71,8 +99,13 @@ func Season(d Design, days []Day, over bool) Standing {
 	default:
 		s.State, s.Level = pipeline.Within, pipeline.LevelWithin
 	}
-	if s.State != pipeline.Exceeded && s.Straddles {
+	s.Expected = !over && s.State != pipeline.Exceeded && outlook.expected(was)
+	switch {
+	case s.State == pipeline.Exceeded:
+	case s.Straddles:
 		s.State = pipeline.Unknown
+	case s.Expected:
+		s.State = pipeline.Expected
 	}
 	return s
 }
@@ -95,7 +128,7 @@ func Told(direction pipeline.Direction, before, after pipeline.State) bool {
 		return false
 	}
 	if direction == pipeline.NotBelow {
-		return after == pipeline.FellShort || before == pipeline.FellShort
+		return after == pipeline.FellShort || before == pipeline.FellShort || after == pipeline.Expected || before == pipeline.Expected
 	}
 	return before != "" || after != pipeline.Within
 }
@@ -116,6 +149,8 @@ func Why(before *Past, after Standing, progressed bool) string {
 		return "gap"
 	case before.Straddles && !after.Straddles:
 		return "gap closed"
+	case before.Expected != after.Expected && before.Level == after.Level:
+		return "outlook"
 	case !progressed || rank[after.State] < rank[before.State]:
 		return "correction"
 	}
@@ -125,7 +160,9 @@ func Why(before *Past, after Standing, progressed bool) string {
 // Past is what was known of a standing when it was last judged.
 type Past struct {
 	State     pipeline.State
+	Level     pipeline.Level
 	Straddles bool
+	Expected  bool
 }
 
 var rank = map[pipeline.State]int{pipeline.Near: 1, pipeline.Exceeded: 2, pipeline.FellShort: 2}

@@ -46,7 +46,7 @@ func TestSeason(t *testing.T) {
 			Standing{State: pipeline.Unknown, Level: pipeline.LevelWithin, Straddles: true, Low: 99, High: 130}},
 	} {
 		t.Run(tc.name, func(t *testing.T) {
-			if diff := cmp.Diff(tc.want, Season(tc.design, tc.days, tc.over)); diff != "" {
+			if diff := cmp.Diff(tc.want, Season(tc.design, tc.days, tc.over, nil, false)); diff != "" {
 				t.Error(diff)
 			}
 		})
@@ -65,7 +65,7 @@ func TestSeasonProperties(t *testing.T) {
 			rise := rapid.Float64Range(0, 8).Draw(t, "rise")
 			low, high = low+rise, high+rise+rapid.Float64Range(0, 2).Draw(t, "doubt")
 			days = append(days, Day{pipeline.Day(i), low, high})
-			s := Season(d, days, false)
+			s := Season(d, days, false, nil, false)
 			if order(s.Level) < order(level) {
 				t.Fatalf("level fell from %s to %s", level, s.Level)
 			}

@@ -3,10 +3,13 @@ package main
 import (
 	"context"
 	"fmt"
+	"math"
 	"slices"
 	"strings"
 	"text/tabwriter"
 
+	"thawledger/alerts/judge"
+	"thawledger/indices"
 	"thawledger/indices/outlook"
 	"thawledger/pipeline"
 	"thawledger/pipeline/store"
@@ -27,7 +30,7 @@ func (p program) outlook(ctx context.Context, args []string) error {
 	if _, err := parse(f, args, 0); err != nil {
 		return err
 	}
-	until := lastOfAll
+	until := pipeline.Day(math.MaxInt32)
 	if *asOf != "" {
 		var err error
 		if until, err = pipeline.ParseDay(*asOf); err != nil {
@@ -47,18 +50,19 @@ func (p program) outlook(ctx context.Context, args []string) error {
 		return err
 	}
 	defer done()
-	var all []madeOutlook
+	svc := &indices.Service{DB: db}
+	var all []indices.MadeOutlook
 	var notes []string
 	for i := range stations {
-		m, err := makeOutlooks(ctx, db, &stations[i], until)
+		m, err := svc.Outlooks(ctx, &stations[i], until)
 		if err != nil {
 			return err
 		}
 		// Scores of a record cut short would stand for the whole one.
-		if err := m.keep(ctx, db, *asOf == ""); err != nil {
+		if err := m.Keep(ctx, db, *asOf == ""); err != nil {
 			return err
 		}
-		all, notes = append(all, m.outlooks...), append(notes, m.notes...)
+		all, notes = append(all, m.Outlooks...), append(notes, m.Notes...)
 	}
 	p.showOutlooks(all, notes)
 	return nil
@@ -77,21 +81,21 @@ func stationsNamed(stations []pipeline.Station, name string) ([]pipeline.Station
 }
 
 // showOutlooks prints one line a surface and design value.
-func (p program) showOutlooks(all []madeOutlook, notes []string) {
+func (p program) showOutlooks(all []indices.MadeOutlook, notes []string) {
 	if len(all) > 0 {
 		w := tabwriter.NewWriter(p.out, 0, 0, 2, ' ', 0)
 		fmt.Fprintln(w, "SITE / SURFACE\tSEASON\tTHROUGH\tDESIGN degC.d\tTO DATE\tCHANCE\tON (10 to 90 %)\tSEASON'S END 10, 50, 90 %\tMEMBERS\tSKILL (5 to 95 %)\tEXPECTED")
 		for i := range all {
 			m := &all[i]
-			fmt.Fprintf(w, "%s / %s\t%s %s\t%s\t%s\t%s\t%s\t%s\t%s\t%d %s\t%s\t%s\n", m.design.Site, m.design.Surface,
-				m.row.Kind, m.row.Season, m.row.Through, designOf(&m.design), bounds(m.row.IndexLow, m.row.IndexHigh, m.row.ThresholdCDays, ""),
-				chance(m), passDays(&m.row), seasonsEnd(&m.row), m.row.Members, m.row.Which, skillShown(m.row.Skill), expectation(m))
+			fmt.Fprintf(w, "%s / %s\t%s %s\t%s\t%s\t%s\t%s\t%s\t%s\t%d %s\t%s\t%s\n", m.Design.Site, m.Design.Surface,
+				m.Row.Kind, m.Row.Season, m.Row.Through, designOf(&m.Design), bounds(m.Row.IndexLow, m.Row.IndexHigh, m.Row.ThresholdCDays, ""),
+				chance(m), passDays(&m.Row), seasonsEnd(&m.Row), m.Row.Members, m.Row.Which, skillShown(m.Row.Skill), expectation(m))
 		}
 		w.Flush()
 		fmt.Fprintf(p.out, "\nIndices are of the air, degC.d. chance: of the season's end, (k + 1/2)/(n + 1) with k of n members. on: if it comes to it at all.\n"+
 			"members: past years whose remaining days were joined to this year's path; moved: shifted by the trend since. skill: by how much such\n"+
 			"outlooks of past seasons at this lead beat the seasons before them (CRPS). expected: the chance is at least %.0f %%; may be announced only with skill.\n",
-			100*expectedShare)
+			100*judge.ExpectedShare)
 	}
 	for _, n := range notes {
 		fmt.Fprintln(p.out, n)
@@ -111,16 +115,16 @@ func designOf(d *store.AirDesign) string {
 }
 
 // chance is that of ending on the wrong side of the design value.
-func chance(m *madeOutlook) string {
-	low, high := m.adverse()
+func chance(m *indices.MadeOutlook) string {
+	low, high := m.Row.Adverse(m.Design.Direction)
 	what := "passes"
-	if m.design.Direction == pipeline.NotBelow {
+	if m.Design.Direction == pipeline.NotBelow {
 		what = "falls short"
 	}
 	switch {
-	case m.row.Passed && m.design.Direction == pipeline.NotBelow:
+	case m.Row.Passed && m.Design.Direction == pipeline.NotBelow:
 		return "has come to it"
-	case m.row.Passed:
+	case m.Row.Passed:
 		return "has passed"
 	case low == high:
 		return fmt.Sprintf("%s %s", what, chancePercent(low))
@@ -163,16 +167,22 @@ func skillShown(s *store.OutlookSkill) string {
 	return fmt.Sprintf("%.2f (%.2f to %.2f)", s.Value, *s.Low, *s.High)
 }
 
-func expectation(m *madeOutlook) string {
+// expected reports whether even the lowest chance of an adverse end is enough.
+func expected(m *indices.MadeOutlook) bool {
+	low, _ := m.Row.Adverse(m.Design.Direction)
+	return low >= judge.ExpectedShare
+}
+
+func expectation(m *indices.MadeOutlook) string {
 	switch {
-	case m.row.Passed: // known, and no matter of chance
+	case m.Row.Passed: // known, and no matter of chance
 		return "-"
-	case m.row.AnnouncedAllowed && m.expected():
+	case m.Row.AnnouncedAllowed && expected(m):
 		return "yes"
-	case m.row.AnnouncedAllowed:
+	case m.Row.AnnouncedAllowed:
 		return "no"
-	case m.row.ScoredYears < outlook.LeastYears:
-		return fmt.Sprintf("not announced: %d seasons scored, %d needed", m.row.ScoredYears, outlook.LeastYears)
+	case m.Row.ScoredYears < outlook.LeastYears:
+		return fmt.Sprintf("not announced: %d seasons scored, %d needed", m.Row.ScoredYears, outlook.LeastYears)
 	}
 	return "not announced: no skill at this lead"
 }

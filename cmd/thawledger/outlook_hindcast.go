@@ -3,10 +3,12 @@ package main
 import (
 	"context"
 	"fmt"
+	"math"
 	"strings"
 	"text/tabwriter"
 	"time"
 
+	"thawledger/indices"
 	"thawledger/indices/outlook"
 	"thawledger/pipeline"
 )
@@ -47,14 +49,15 @@ func (p program) hindcast(ctx context.Context, args []string) error {
 		return err
 	}
 	defer done()
-	record, err := recordUntil(ctx, db, *station, lastOfAll)
+	days, err := indices.DaysUntil(ctx, db, *station, pipeline.Day(math.MaxInt32))
 	if err != nil {
 		return err
 	}
-	if record == nil {
+	if len(days) == 0 {
 		return fmt.Errorf("station %s has no record yet", *station)
 	}
-	h := record.Hindcast(outlookQuestion(&found[0], outlookIndex{kind, definition}), outlook.HindcastOptions{FromYear: *fromYear, Seed: bootstrapSeed})
+	record := outlook.NewRecord(days)
+	h := record.Hindcast(indices.OutlookIndex{Kind: kind, Definition: definition}.Question(&found[0]), outlook.HindcastOptions{FromYear: *fromYear, Seed: 1})
 	p.showHindcast(*station, record, h)
 	return nil
 }

@@ -16,11 +16,11 @@ func (j *Judging) OpenExceedance(ctx context.Context, s *StandingRow) (int64, er
 	var id int64
 	err := j.tx.QueryRow(ctx, `insert into thaw.exceedances (design_value_id, site, surface, kind, season_start, near_on, exceeded_on,
 			confirmed_on, through_day, index_c_days, index_low_c_days, index_high_c_days, design_c_days, n_factor,
-			days_interpolated, days_missing, fell_short)
-		values ($1, $2, $3, $4, $5, $6, $7, $8, $9, $10, $11, $12, $13, $14, $15, $16, $17) returning exceedance_id`,
+			days_interpolated, days_missing, fell_short, expected_on)
+		values ($1, $2, $3, $4, $5, $6, $7, $8, $9, $10, $11, $12, $13, $14, $15, $16, $17, $18) returning exceedance_id`,
 		s.Design.ID, s.Design.Site, s.Design.Surface, string(s.Design.Kind), s.Season.Time(), dateOf(s.NearOn), dateOf(s.ExceededOn),
 		dateOf(s.ConfirmedOn), s.Day.Time(), known(s.Low, s.High), s.Low, s.High, s.Design.CDays, s.Factor,
-		s.Interpolated, s.Missing, s.State == pipeline.FellShort).Scan(&id)
+		s.Interpolated, s.Missing, s.State == pipeline.FellShort, dateOf(s.ExpectedOn)).Scan(&id)
 	if err != nil {
 		return 0, fmt.Errorf("open exceedance of %s/%s: %w", s.Design.Site, s.Design.Surface, err)
 	}
@@ -38,11 +38,11 @@ func (j *Judging) ChangeExceedance(ctx context.Context, id int64, s *StandingRow
 	}
 	_, err := j.tx.Exec(ctx, `update thaw.exceedances set near_on = $2, exceeded_on = $3, confirmed_on = $4, through_day = $5,
 			index_c_days = $6, index_low_c_days = $7, index_high_c_days = $8, n_factor = $9, days_interpolated = $10,
-			days_missing = $11, fell_short = $12, changed_at = clock_timestamp(), closed_on = $13, closed_as = $14,
+			days_missing = $11, fell_short = $12, expected_on = $15, changed_at = clock_timestamp(), closed_on = $13, closed_as = $14,
 			closed_at = case when $14::text is null then null else coalesce(closed_at, clock_timestamp()) end
 		where exceedance_id = $1`,
 		id, dateOf(s.NearOn), dateOf(s.ExceededOn), dateOf(s.ConfirmedOn), s.Day.Time(), known(s.Low, s.High), s.Low, s.High, s.Factor,
-		s.Interpolated, s.Missing, s.State == pipeline.FellShort, closedOn, closedAs)
+		s.Interpolated, s.Missing, s.State == pipeline.FellShort, closedOn, closedAs, dateOf(s.ExpectedOn))
 	if err != nil {
 		return fmt.Errorf("change exceedance %d: %w", id, err)
 	}

@@ -175,6 +175,8 @@ type StandingRow struct {
 	Interpolated int
 	Missing      int
 	Over         bool
+	ExpectedOn   *pipeline.Day // not nil if the season is expected to end on the wrong side
+	Outlook      *OutlookRow   // the latest; nil if there is none
 }
 
 // Before is what was stored of a standing.
@@ -182,7 +184,10 @@ type Before struct {
 	State      pipeline.State
 	Day        pipeline.Day
 	Over       bool
+	Level      pipeline.Level
 	Straddles  bool
+	Expected   bool
+	ExpectedOn *pipeline.Day
 	ExceededOn *pipeline.Day
 	// Exceedance is the one that stands; 0 if none does.
 	Exceedance int64
@@ -192,41 +197,51 @@ type Before struct {
 func (j *Judging) Standing(ctx context.Context, design int64, season pipeline.Day) (*Before, error) {
 	var b Before
 	var day time.Time
-	var exceeded *time.Time
-	err := j.tx.QueryRow(ctx, `select s.state, s.day, s.season_over, s.straddles, s.exceeded_on, coalesce(e.exceedance_id, 0)
+	var exceeded, expected *time.Time
+	err := j.tx.QueryRow(ctx, `select s.state, s.day, s.season_over, s.straddles, s.exceeded_on, s.level, s.expected, s.expected_on, coalesce(e.exceedance_id, 0)
 		from thaw.standings s left join thaw.exceedances e on e.design_value_id = s.design_value_id and e.season_start = s.season_start
 			and (e.closed_as is null or e.closed_as = 'season over')
-		where s.design_value_id = $1 and s.season_start = $2`, design, season.Time()).Scan(&b.State, &day, &b.Over, &b.Straddles, &exceeded, &b.Exceedance)
+		where s.design_value_id = $1 and s.season_start = $2`, design, season.Time()).Scan(&b.State, &day, &b.Over, &b.Straddles, &exceeded,
+		&b.Level, &b.Expected, &expected, &b.Exceedance)
 	if errors.Is(err, pgx.ErrNoRows) {
 		return nil, nil
 	}
 	if err != nil {
 		return nil, fmt.Errorf("read standing: %w", err)
 	}
-	b.Day = dayOf(day)
-	if exceeded != nil {
-		d := dayOf(*exceeded)
-		b.ExceededOn = &d
-	}
+	b.Day, b.ExceededOn, b.ExpectedOn = dayOf(day), dayIf(exceeded), dayIf(expected)
 	return &b, nil
 }
 
 // WriteStanding puts a row in the place of the one of its design value and season.
 func (j *Judging) WriteStanding(ctx context.Context, s *StandingRow) error {
+	var low, high *float64
+	var passDays [3]*time.Time
+	var through *time.Time
+	if o := s.Outlook; o != nil {
+		l, h := o.Adverse(s.Design.Direction)
+		low, high, passDays, through = &l, &h, [3]*time.Time{dateOf(o.PassDay10), dateOf(o.PassDay50), dateOf(o.PassDay90)}, dateOf(&o.Through)
+	}
 	_, err := j.tx.Exec(ctx, `insert into thaw.standings (design_value_id, season_start, site, surface, kind, season, day, state,
 			level, straddles, index_c_days, index_low_c_days, index_high_c_days, sum_beside_c_days, design_c_days, n_factor,
-			near_on, exceeded_on, confirmed_on, days_interpolated, days_missing, season_over)
-		values ($1, $2, $3, $4, $5, $6, $7, $8, $9, $10, $11, $12, $13, $14, $15, $16, $17, $18, $19, $20, $21, $22)
+			near_on, exceeded_on, confirmed_on, days_interpolated, days_missing, season_over,
+			expected, expected_on, probability_low, probability_high, pass_day_10, pass_day_50, pass_day_90, outlook_through)
+		values ($1, $2, $3, $4, $5, $6, $7, $8, $9, $10, $11, $12, $13, $14, $15, $16, $17, $18, $19, $20, $21, $22,
+			$23, $24, $25, $26, $27, $28, $29, $30)
 		on conflict (design_value_id, season_start) do update set
 			season = excluded.season, day = excluded.day, state = excluded.state, level = excluded.level,
 			straddles = excluded.straddles, index_c_days = excluded.index_c_days, index_low_c_days = excluded.index_low_c_days,
 			index_high_c_days = excluded.index_high_c_days, sum_beside_c_days = excluded.sum_beside_c_days,
 			n_factor = excluded.n_factor, near_on = excluded.near_on, exceeded_on = excluded.exceeded_on,
 			confirmed_on = excluded.confirmed_on, days_interpolated = excluded.days_interpolated,
-			days_missing = excluded.days_missing, season_over = excluded.season_over, judged_at = clock_timestamp()`,
+			days_missing = excluded.days_missing, season_over = excluded.season_over, expected = excluded.expected,
+			expected_on = excluded.expected_on, probability_low = excluded.probability_low, probability_high = excluded.probability_high,
+			pass_day_10 = excluded.pass_day_10, pass_day_50 = excluded.pass_day_50, pass_day_90 = excluded.pass_day_90,
+			outlook_through = excluded.outlook_through, judged_at = clock_timestamp()`,
 		s.Design.ID, s.Season.Time(), s.Design.Site, s.Design.Surface, string(s.Design.Kind), s.Label, s.Day.Time(), string(s.State),
 		string(s.Level), s.Straddles, known(s.Low, s.High), s.Low, s.High, s.SumBeside, s.Design.CDays, s.Factor,
-		dateOf(s.NearOn), dateOf(s.ExceededOn), dateOf(s.ConfirmedOn), s.Interpolated, s.Missing, s.Over)
+		dateOf(s.NearOn), dateOf(s.ExceededOn), dateOf(s.ConfirmedOn), s.Interpolated, s.Missing, s.Over,
+		s.ExpectedOn != nil, dateOf(s.ExpectedOn), low, high, passDays[0], passDays[1], passDays[2], through)
 	if err != nil {
 		return fmt.Errorf("write standing of %s/%s: %w", s.Design.Site, s.Design.Surface, err)
 	}

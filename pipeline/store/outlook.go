@@ -197,9 +197,9 @@ func (db *DB) Outlook(ctx context.Context, station string, design int64, season 
 	return latestOutlook(ctx, db.pool, station, design, season)
 }
 
-// Outlook is DB.Outlook within the transaction.
-func (j *Judging) Outlook(ctx context.Context, station string, design int64, season pipeline.Day) (*OutlookRow, error) {
-	return latestOutlook(ctx, j.tx, station, design, season)
+// Outlook is DB.Outlook for the station that is judged.
+func (j *Judging) Outlook(ctx context.Context, design int64, season pipeline.Day) (*OutlookRow, error) {
+	return latestOutlook(ctx, j.tx, j.station, design, season)
 }
 
 func latestOutlook(ctx context.Context, q querier, station string, design int64, season pipeline.Day) (*OutlookRow, error) {

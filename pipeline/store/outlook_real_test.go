@@ -107,7 +107,7 @@ func TestOutlooks(t *testing.T) {
 	judged := false
 	err = db.JudgeStation(ctx, "TARN", func(j *store.Judging, _ pipeline.Day) error {
 		judged = true
-		got, err := j.Outlook(ctx, "TARN", id, season)
+		got, err := j.Outlook(ctx, id, season)
 		if err == nil && (got == nil || got.ThresholdCDays != 250) {
 			t.Errorf("while judging: %v", got)
 		}

@@ -170,7 +170,7 @@ func (db *DB) FailPart(ctx context.Context, batch int64, part int32, reason stri
 type Pending struct {
 	OpenBatches int // not read to their end
 	OpenParts   int // not committed, not stuck
-	Recomputes  int // stations to be made anew
+	Recomputes  int // stations to be made anew, or their outlooks
 	Withdrawals int // readings to be withdrawn, by batch and station
 	Changes     int // stations to be judged
 	Unannounced int // changes to be told
@@ -190,7 +190,7 @@ func (db *DB) Pending(ctx context.Context) (Pending, error) {
 	err := db.pool.QueryRow(ctx, `select
 		(select count(*) from thaw.batches where state = 'opened'),
 		(select count(*) from thaw.batch_parts p where `+open+`),
-		(select count(*) from thaw.stations where recompute or reindex or refill),
+		(select count(*) from thaw.stations where recompute or reindex or refill or outlook_wanted > outlook_made),
 		(select count(*) from thaw.withdrawals),
 		(select count(*) from thaw.changes),
 		(select count(*) from thaw.standing_changes where announce and announced_at is null),

@@ -33,6 +33,18 @@ type StandingNow struct {
 	DaysMissing      int
 	SeasonOver       bool
 	OnsetProvisional *bool
+
+	DaysNeighbour       *int
+	DaysClimatology     *int
+	StandardErrorCDays  *float64
+	DaysDoubtful        *int
+	WithoutDoubtfulLow  *float64
+	WithoutDoubtfulHigh *float64
+	Homogeneous         *bool
+
+	ProbabilityLow, ProbabilityHigh *float64
+	PassDay10, PassDay50, PassDay90 *time.Time
+	ExpectedOn                      *time.Time
 }
 
 // StandingsNow returns the current standing of every surface, by site, surface
@@ -40,7 +52,10 @@ type StandingNow struct {
 func (db *DB) StandingsNow(ctx context.Context, site string) ([]StandingNow, error) {
 	rows, err := db.pool.Query(ctx, `select site, site_name, surface, surface_name, station, kind, definition, index_of, direction,
 			season, day, state, index_c_days, index_low_c_days, index_high_c_days, design_c_days, share_of_design, near_on,
-			exceeded_on, days_interpolated, days_missing, season_over, onset_provisional
+			exceeded_on, days_interpolated, days_missing, season_over, onset_provisional,
+			days_neighbour, days_climatology, standard_error_c_days, days_doubtful,
+			without_doubtful_low_c_days as without_doubtful_low, without_doubtful_high_c_days as without_doubtful_high, homogeneous,
+			probability_low, probability_high, pass_day_10 as pass_day10, pass_day_50 as pass_day50, pass_day_90 as pass_day90, expected_on
 		from thaw.standing_now where $1 = '' or site = $1 order by site, surface, kind desc, direction`, site)
 	if err != nil {
 		return nil, fmt.Errorf("read standings: %w", err)

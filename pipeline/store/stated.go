@@ -142,6 +142,9 @@ func stateSites(ctx context.Context, tx pgx.Tx, s Stated) error {
 		if err := addChange(ctx, tx, station, beginning); err != nil {
 			return err
 		}
+		if _, err := tx.Exec(ctx, outlookWanted, station); err != nil {
+			return fmt.Errorf("ask for outlook of %s: %w", station, err)
+		}
 	}
 	return nil
 }

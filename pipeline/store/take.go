@@ -200,5 +200,8 @@ func (t *Take) AddChange(ctx context.Context, from pipeline.Day) error {
 	if err != nil {
 		return fmt.Errorf("mark records joined from %s: %w", t.station, err)
 	}
+	if _, err := t.tx.Exec(ctx, outlookWanted, t.station); err != nil {
+		return fmt.Errorf("ask for outlook of %s: %w", t.station, err)
+	}
 	return addChange(ctx, t.tx, t.station, from)
 }

@@ -141,3 +141,67 @@ comment on column thaw.outlook_scores.pinball_climatology_50 is 'Of its 50 % val
 comment on column thaw.outlook_scores.pinball_climatology_90 is 'Of its 90 % value.';
 comment on column thaw.outlook_scores.thresholds_c_days is 'Thresholds of the Brier score, air index in degC.d: design values, or quantiles of the record where crossings of those are rare.';
 comment on column thaw.outlook_scores.made_at is 'When they were made.';
+
+alter table thaw.stations add column outlook_wanted bigint not null default 0;
+alter table thaw.stations add column outlook_made bigint not null default 0;
+comment on column thaw.stations.outlook_wanted is 'How often outlooks have been asked for: whenever the indices, or what they are held against, change.';
+comment on column thaw.stations.outlook_made is 'What outlook_wanted was when outlooks were last made; less than it if they wait to be made.';
+
+-- What a standing says of the rest of the season.
+alter table thaw.standings add column expected boolean not null default false;
+alter table thaw.standings add column expected_on date;
+alter table thaw.standings add column probability_low double precision;
+alter table thaw.standings add column probability_high double precision;
+alter table thaw.standings add column pass_day_10 date;
+alter table thaw.standings add column pass_day_50 date;
+alter table thaw.standings add column pass_day_90 date;
+alter table thaw.standings add column outlook_through date;
+comment on column thaw.standings.expected is 'Whether the season is expected to end on the wrong side of the design value, by an outlook that has shown skill at this lead.';
+comment on column thaw.standings.expected_on is 'Day of the outlook by which it first was, without a break since.';
+comment on column thaw.standings.probability_low is 'Chance of ending on the wrong side, by the latest outlook: lowest where missing days leave it open. Null without an outlook.';
+comment on column thaw.standings.probability_high is 'The same, highest.';
+comment on column thaw.standings.pass_day_10 is 'Day of passing in 10 % of the past years that pass, by the latest outlook.';
+comment on column thaw.standings.pass_day_50 is 'The same, 50 %.';
+comment on column thaw.standings.pass_day_90 is 'The same, 90 %.';
+comment on column thaw.standings.outlook_through is 'Last day used by the latest outlook.';
+alter table thaw.exceedances add column expected_on date;
+comment on column thaw.exceedances.expected_on is 'Day of the outlook by which the passing was first expected, without a break since.';
+
+create or replace view thaw.standing_now as
+select distinct on (s.site, s.surface, s.kind, d.definition, d.index_of, d.direction)
+       s.site, t.name as site_name, s.surface, u.name as surface_name, t.station, s.kind, d.definition, d.index_of, d.direction,
+       s.season, s.season_start, s.day, s.state, s.level,
+       s.index_c_days, s.index_low_c_days, s.index_high_c_days, s.sum_beside_c_days, s.design_c_days,
+       s.index_low_c_days / s.design_c_days as share_of_design,
+       s.n_factor, d.design_stated, d.unit_stated, d.source as design_source,
+       s.near_on, s.exceeded_on, s.confirmed_on, s.days_interpolated, s.days_missing, s.season_over,
+       i.onset_provisional, s.design_value_id,
+       (select max(a.through_day) from thaw.approvals a where a.station = t.station and a.withdrawn_at is null) as approved_through,
+       s.expected, s.expected_on, s.probability_low, s.probability_high, s.pass_day_10, s.pass_day_50, s.pass_day_90, s.outlook_through,
+       i.days_neighbour, i.days_climatology, i.standard_error_c_days * coalesce(s.n_factor, 1) as standard_error_c_days,
+       i.days_doubtful, i.without_doubtful_low_c_days * coalesce(s.n_factor, 1) as without_doubtful_low_c_days,
+       i.without_doubtful_high_c_days * coalesce(s.n_factor, 1) as without_doubtful_high_c_days, i.homogeneous
+from thaw.standings s
+join thaw.design_values d using (design_value_id)
+join thaw.sites t on t.site = s.site
+join thaw.surfaces u on u.site = s.site and u.surface = s.surface
+left join thaw.air_index_season i on i.station = t.station and i.kind = s.kind and i.season_start = s.season_start
+     and i.definition = case d.definition when 'sum' then 'sum' else 'curve' end
+order by s.site, s.surface, s.kind, d.definition, d.index_of, d.direction,
+         -- what must be reached is known at a season's end: until then the last one that is over is shown
+         d.direction = 'not_below' and s.state = 'unknown' and not s.season_over, s.season_start desc;
+comment on column thaw.standing_now.expected is 'Whether the season is expected to end on the wrong side of the design value.';
+comment on column thaw.standing_now.expected_on is 'Day of the outlook by which it first was.';
+comment on column thaw.standing_now.probability_low is 'Chance of that, lowest; null without an outlook.';
+comment on column thaw.standing_now.probability_high is 'Chance of that, highest.';
+comment on column thaw.standing_now.pass_day_10 is 'Day of passing in 10 % of the past years that pass.';
+comment on column thaw.standing_now.pass_day_50 is 'The same, 50 %.';
+comment on column thaw.standing_now.pass_day_90 is 'The same, 90 %.';
+comment on column thaw.standing_now.outlook_through is 'Last day used by the outlook.';
+comment on column thaw.standing_now.days_neighbour is 'Days filled from a neighbour.';
+comment on column thaw.standing_now.days_climatology is 'Days filled with the mean of the date.';
+comment on column thaw.standing_now.standard_error_c_days is 'Standard error that filled days give the index compared, degC.d.';
+comment on column thaw.standing_now.days_doubtful is 'Days that rest on doubtful values; they are in the index.';
+comment on column thaw.standing_now.without_doubtful_low_c_days is 'Lowest possible index without them, degC.d.';
+comment on column thaw.standing_now.without_doubtful_high_c_days is 'Highest possible index without them, degC.d.';
+comment on column thaw.standing_now.homogeneous is 'Whether the air record of the season is homogeneous.';
