@@ -23,7 +23,7 @@ type filled struct {
 	fills    []filling.Filled // those whose error is known
 }
 
-// fill tests the days of a record and completes it: a straight line over short gaps, then regression on
+// fill tests the days of a record, unless they are tested, and completes it: a straight line over short gaps, then regression on
 // the station's neighbours, then, where the settings allow it, the mean of the
 // date. Neighbours carry the record on past its last observed day. What nothing
 // fills stays missing, with bounds.
@@ -31,9 +31,11 @@ type filled struct {
 // The regressions are learned from whole calendar years up to the year before
 // the record's last observed day, so that filled days change when a year ends or
 // readings of earlier years are corrected, and not with every new day.
-func (s *Service) fill(ctx context.Context, t *store.Take, st *pipeline.Station, values []daily.Value) (*filled, error) {
+func (s *Service) fill(ctx context.Context, t *store.Take, st *pipeline.Station, values []daily.Value, tested bool) (*filled, error) {
 	days, extremes := daily.Complete(values, st.FillDays)
-	test(st, days)
+	if !tested {
+		test(st, days)
+	}
 	f := &filled{days: days, extremes: extremes}
 	if len(days) == 0 {
 		return f, nil

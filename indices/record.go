@@ -26,7 +26,7 @@ func (s *Service) bringIntoLine(ctx context.Context, t *store.Take, st *pipeline
 	if err != nil {
 		return err
 	}
-	return s.write(ctx, t, st, stored, merge(stored, values), false)
+	return s.write(ctx, t, st, stored, merge(stored, values), true, false)
 }
 
 // beyond adds to days those that lie between them and the stored record. A day
@@ -66,7 +66,7 @@ func (s *Service) makeAnew(ctx context.Context, t *store.Take, st *pipeline.Stat
 		if err != nil {
 			return err
 		}
-		return s.write(ctx, t, st, stored, values, true)
+		return s.write(ctx, t, st, stored, values, true, true)
 	}
 	first, last, ok, err := t.Span(ctx)
 	if err != nil {
@@ -93,7 +93,7 @@ func (s *Service) makeAnew(ctx context.Context, t *store.Take, st *pipeline.Stat
 			return err
 		}
 	}
-	return s.write(ctx, t, st, stored, values, true)
+	return s.write(ctx, t, st, stored, values, true, true)
 }
 
 // reached adds to days those that edits may have moved their readings to, and
@@ -135,10 +135,11 @@ func merge(stored []store.DayRow, made []daily.Value) []daily.Value {
 
 // write completes the record, writes the days that differ from the
 // stored ones and the indices that follow from them, and leaves a line in
-// changes. With all, every index is worked out again, whether its days have
-// changed or not: the rules may have.
-func (s *Service) write(ctx context.Context, t *store.Take, st *pipeline.Station, stored []store.DayRow, values []daily.Value, all bool) error {
-	f, err := s.fill(ctx, t, st, values)
+// changes. fresh says that some of the values are not stored yet, so that all are
+// to be tested again. With all, every index is worked out again, whether its days
+// have changed or not: the rules may have.
+func (s *Service) write(ctx context.Context, t *store.Take, st *pipeline.Station, stored []store.DayRow, values []daily.Value, fresh, all bool) error {
+	f, err := s.fill(ctx, t, st, values, !fresh)
 	if err != nil {
 		return err
 	}

@@ -100,7 +100,7 @@ func (s *Service) refill(ctx context.Context, station string, all bool) error {
 		if err != nil {
 			return err
 		}
-		return s.write(ctx, t, st, stored, merge(stored, nil), all)
+		return s.write(ctx, t, st, stored, merge(stored, nil), false, all)
 	})
 	if errors.Is(err, store.ErrBusy) {
 		return nil // looked at again later

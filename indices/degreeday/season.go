@@ -88,9 +88,20 @@ func (s *Season) Complete() bool { return s.Over && s.Missing == 0 }
 // temperature is not finite, beyond 1e6 degC, or a missing day's LowC is above
 // its HighC.
 func Build(kind pipeline.Kind, w Window, label string, baseC float64, days []DayMean, recordEnd pipeline.Day) Season {
+	var s Season
+	s.Build(kind, w, label, baseC, days, recordEnd)
+	return s
+}
+
+// Build is the function Build, in the memory that s.Days has.
+func (s *Season) Build(kind pipeline.Kind, w Window, label string, baseC float64, days []DayMean, recordEnd pipeline.Day) {
 	check(kind, w, baseC, days, recordEnd)
-	s := Season{
-		Kind: kind, Window: w, Label: label, Days: make([]DayIndex, len(days)),
+	memory := s.Days
+	if cap(memory) < len(days) {
+		memory = make([]DayIndex, len(days))
+	}
+	*s = Season{
+		Kind: kind, Window: w, Label: label, Days: memory[:len(days)],
 		Through: days[len(days)-1].Day, Over: recordEnd >= w.Last,
 	}
 	low, high, gap := newRise(), rise{}, 0
@@ -132,16 +143,16 @@ func Build(kind pipeline.Kind, w Window, label string, baseC float64, days []Day
 			high.step(highX, highPos)
 			top = &high
 		}
-		s.Days[i] = DayIndex{
-			Day: m.Day, Running: Bounds{low.running, top.running}, CurveToDate: Bounds{low.toDate, top.toDate},
-			Sum: Bounds{low.sum, top.sum},
-		}
+		d := &s.Days[i]
+		d.Day = m.Day
+		d.Running.Low, d.Running.High = low.running, top.running
+		d.CurveToDate.Low, d.CurveToDate.High = low.toDate, top.toDate
+		d.Sum.Low, d.Sum.High = low.sum, top.sum
 	}
-	last := s.Days[len(s.Days)-1]
+	last := &s.Days[len(s.Days)-1]
 	s.Curve = s.result(days, last.CurveToDate, low.first, low.last)
 	s.Curve.OnsetProvisional = !s.Over && low.toDate <= onsetCDays
 	s.Sum = s.result(days, last.Sum, low.firstPos, low.lastPos)
-	return s
 }
 
 // excess returns the lowest and the highest excess that a day may have.

@@ -16,16 +16,18 @@ import (
 
 // Settings is everything that the settings file says, defaults filled in.
 type Settings struct {
-	Data     string // data folder; "" if the file names none
-	Store    Store
-	Bus      Bus
-	Listen   Listen
-	Work     Work
-	Stations []pipeline.Station
-	Layouts  map[string]*pipeline.Layout // by name, as declared, for no station yet
-	Feeds    []pipeline.Feed
-	Sites    []pipeline.Site
-	Hash     string // SHA-256 of the settings in force
+	Data       string // data folder; "" if the file names none
+	Store      Store
+	Bus        Bus
+	Listen     Listen
+	Work       Work
+	Stations   []pipeline.Station
+	Layouts    map[string]*pipeline.Layout // by name, as declared, for no station yet
+	Feeds      []pipeline.Feed
+	Sites      []pipeline.Site
+	Channels   []pipeline.Channel
+	Recipients []pipeline.Recipient
+	Hash       string // SHA-256 of the settings in force
 
 	text      string // see Text
 	defaulted map[string]bool
@@ -142,6 +144,8 @@ func (r *reader) read(s *Settings, root *yaml.Node, base string) {
 	r.readFeeds(s, o, stations, within)
 	r.readPush(s, r.object(o.get("push"), "push", root), within)
 	r.readSites(s, o, stations)
+	r.readChannels(s, o, within)
+	r.readRecipients(s, o)
 	o.done()
 }
 

@@ -160,6 +160,12 @@ func (s *Settings) write(mark bool) []byte {
 	})
 	t.list("feeds", len(s.Feeds), func(i int, t *tree) { writeFeed(t, &s.Feeds[i]) })
 	t.list("sites", len(s.Sites), func(i int, t *tree) { writeSite(t, &s.Sites[i]) })
+	if len(s.Channels) > 0 {
+		t.list("channels", len(s.Channels), func(i int, t *tree) { writeChannel(t, &s.Channels[i]) })
+	}
+	if len(s.Recipients) > 0 {
+		t.list("recipients", len(s.Recipients), func(i int, t *tree) { writeRecipient(t, &s.Recipients[i]) })
+	}
 	var out bytes.Buffer
 	e := yaml.NewEncoder(&out)
 	e.SetIndent(2)
@@ -279,6 +285,7 @@ func writeSite(t *tree, site *pipeline.Site) {
 	t.text("id", site.ID)
 	t.text("name", site.Name)
 	t.text("station", site.Station)
+	writeSiteWords(t, site)
 	t.list("surfaces", len(site.Surfaces), func(i int, t *tree) {
 		s := &site.Surfaces[i]
 		t.text("id", s.ID)

@@ -44,6 +44,7 @@ func (r *reader) site(o *object, stations map[string]*pipeline.Station) pipeline
 	if site.Name == "" {
 		site.Name = site.ID
 	}
+	site.Tags, site.Instructions = r.tags(o), r.instructions(o)
 	st := stations[site.Station]
 	if st == nil && site.Station != "" && o.has("station") {
 		r.fault(o.vals["station"], o.at("station"), known("stations", maps.Keys(stations)), "there is no station %q", site.Station)

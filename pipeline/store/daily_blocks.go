@@ -36,6 +36,11 @@ func (t *Take) Days(ctx context.Context) ([]DayRow, error) { return t.DaysOf(ctx
 
 // DaysOf returns the daily values of any station in order of date.
 func (t *Take) DaysOf(ctx context.Context, station string) ([]DayRow, error) {
+	var n int
+	err := t.tx.QueryRow(ctx, `select coalesce(max(last_day) - min(first_day) + 1, 0) from thaw.daily_blocks where station = $1`, station).Scan(&n)
+	if err != nil {
+		return nil, fmt.Errorf("count daily values of %s: %w", station, err)
+	}
 	rows, err := t.tx.Query(ctx, `select first_day, last_day, mean_rule, mean_rules, mean_c, max_c, min_c, low_c, high_c, origin, hours,
 			longest_hole, quality, error_c, filled_from, tests_made, tests_failed
 		from thaw.daily_blocks where station = $1 order by month`, station)
@@ -43,7 +48,7 @@ func (t *Take) DaysOf(ctx context.Context, station string) ([]DayRow, error) {
 		return nil, fmt.Errorf("read daily values of %s: %w", station, err)
 	}
 	var (
-		out                                    []DayRow
+		out                                    = make([]DayRow, 0, n)
 		first, last                            time.Time
 		rule                                   string
 		rules                                  []string
