@@ -358,7 +358,7 @@ func TestRunMakesAnew(t *testing.T) {
 	if err := w.State(t.Context(), store.Stated{Hash: "h", Stations: []pipeline.Station{st}}); err != nil {
 		t.Fatal(err)
 	}
-	w.run(t, "made anew", func() bool { return w.one(t, `select recompute from thaw.stations`) == "f" })
+	w.run(t, "made anew", func() bool { return w.one(t, `select recompute or reindex from thaw.stations`) == "f" })
 	if got := w.one(t, `select distinct base_c from thaw.air_index_season`); got != "2" || w.nudge.Load() == 0 {
 		t.Errorf("base %s, want 2; told %d times", got, w.nudge.Load())
 	}
