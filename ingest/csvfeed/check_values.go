@@ -24,12 +24,13 @@ func (f *faults) checkValues(layout *pipeline.Layout, p *Plan) {
 			f.add(at+"variable", "%w", err)
 		}
 		covers := layout.Time.Covers
+		medium, statistic := variable.Of()
 		switch {
 		case err != nil || covers == "":
-		case variable == pipeline.AirTemp && covers != pipeline.CoversInstant:
-			f.add(at+"variable", "air_temp is a value at an instant, and time.covers is %s; air_temp_mean, air_temp_max or air_temp_min is right", covers)
-		case variable != pipeline.AirTemp && covers == pipeline.CoversInstant:
-			f.add(at+"variable", "%s is of a span, and time.covers is instant; air_temp is right, or day, ending or beginning", c.Variable)
+		case statistic == pipeline.AirTemp && covers != pipeline.CoversInstant:
+			f.add(at+"variable", "%[1]s_temp is a value at an instant, and time.covers is %[2]s; %[1]s_temp_mean, %[1]s_temp_max or %[1]s_temp_min is right", medium, covers)
+		case statistic != pipeline.AirTemp && covers == pipeline.CoversInstant:
+			f.add(at+"variable", "%s is of a span, and time.covers is instant; %s_temp is right, or day, ending or beginning", c.Variable, medium)
 		}
 		if !slices.Contains(pipeline.TempUnits, c.Unit) {
 			f.add(at+"unit", "%q is no unit; known are %s", string(c.Unit), unitNames())

@@ -44,7 +44,7 @@ func TestCompileRefuses(t *testing.T) {
 			l.Station.Clocks = map[string]pipeline.StationClock{"north": {DayStartsS: 86400}}
 		}, `station.clocks: day_starts_s 86400 of "north" is not within a day (86400)`},
 		{"no values", func(l *pipeline.Layout) { l.Values = nil }, `values: there are 0 columns; 1 to 1000 give the readings`},
-		{"variable", func(l *pipeline.Layout) { l.Values[1].Variable = "tmin" }, `values[1].variable: "tmin" is no variable; known are air_temp, air_temp_mean, air_temp_max, air_temp_min`},
+		{"variable", func(l *pipeline.Layout) { l.Values[1].Variable = "tmin" }, `values[1].variable: "tmin" is no variable; known are air_temp, air_temp_mean, air_temp_max, air_temp_min, and the same of surface_temp`},
 		{"instant of a day", func(l *pipeline.Layout) { l.Values[1].Variable = "air_temp" }, `values[1].variable: air_temp is a value at an instant, and time.covers is day; air_temp_mean, air_temp_max or air_temp_min is right`},
 		{"unit", func(l *pipeline.Layout) { l.Values[0].Unit = "C" }, `values[0].unit: "C" is no unit; known are degC, degF, K, tenths degC, tenths degF`},
 		{"level", func(l *pipeline.Layout) { l.Values[0].LevelM = math.Inf(1) }, `values[0].level_m: +Inf is no height in m`},

@@ -63,3 +63,5 @@ comment on column thaw.measured_n.measured_by is 'Station that measures the surf
 comment on column thaw.measured_n.surface_c_days is 'Surface index as measured, degC.d.';
 comment on column thaw.measured_n.air_c_days is 'Air index at the site''s station, degC.d.';
 comment on column thaw.measured_n.n_measured is 'The one divided by the other.';
+alter table thaw.series drop constraint series_variable_check;
+alter table thaw.series add check (variable between 1 and 8);
