@@ -27,7 +27,9 @@ func makeDays(ctx context.Context, t *store.Take, st *pipeline.Station, edits []
 		next := 0 // the day of run that readings are being gathered for
 		finish := func(upTo pipeline.Day) {
 			for next < len(run) && run[next] < upTo {
-				values = append(values, daily.Make(st, run[next], in))
+				v := daily.Make(st, run[next], in)
+				testReadings(st, &v, in)
+				values = append(values, v)
 				in = in[:0]
 				next++
 			}

@@ -86,7 +86,43 @@ func (r *record) window(kind pipeline.Kind, d pipeline.Day) degreeday.Window {
 // build works the season of a kind in a window out; the record has a day of it.
 func (r *record) build(kind pipeline.Kind, w degreeday.Window) *degreeday.Season {
 	s := degreeday.Build(kind, w, w.Label(), r.baseC, r.within(w), r.end())
+	if !s.Over {
+		s.Settle(r.relapses(&s))
+	}
 	return &s
+}
+
+// relapses returns the largest relapses that past seasons without missing days
+// have met with after the date that a season has come to.
+func (r *record) relapses(open *degreeday.Season) (out []float64) {
+	var s degreeday.Season
+	var excess []float64
+	for d := r.begin; d < open.Window.First; {
+		w := r.window(open.Kind, d)
+		d = w.Last + 1
+		if w.First < r.first() || w.First >= open.Window.First {
+			continue
+		}
+		days := r.within(w)
+		s.Build(open.Kind, w, "", r.baseC, days, r.end())
+		if !s.Complete() {
+			continue
+		}
+		excess = excess[:0]
+		for i := range days {
+			x := days[i].MeanC - r.baseC
+			if open.Kind == pipeline.Freeze {
+				x = -x
+			}
+			excess = append(excess, x)
+		}
+		fall := 0.0
+		if s.Curve.Began {
+			fall = degreeday.LargestFall(excess, int(open.Through-open.Window.First), int(s.Curve.Last-w.First))
+		}
+		out = append(out, fall)
+	}
+	return out
 }
 
 // within returns the record's days in a window.

@@ -51,7 +51,8 @@ type Result struct {
 	// or the high that it marks has a missing day beside it.
 	EdgeProvisional bool
 	// OnsetProvisional: the season is not over and even the lowest filling has
-	// not yet risen above 50 degC.d, so that a relapse may move First. Curve only.
+	// not yet risen above 50 degC.d, or what Settle has learned from past seasons,
+	// so that a relapse may move First. Curve only.
 	OnsetProvisional bool
 }
 

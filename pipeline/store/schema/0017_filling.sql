@@ -56,3 +56,4 @@ comment on column thaw.record_breaks.station is 'Station.';
 comment on column thaw.record_breaks.day is 'First day after the change.';
 comment on column thaw.record_breaks.what is 'sensor, shield, height, moved, calibrated as the settings state them; handed over: a joined record goes on with another station; rule: the rule of the daily mean is another (the month from which).';
 comment on column thaw.record_breaks.note is 'What is known of it.';
+comment on column thaw.air_index_season.onset_provisional is 'The running value has not yet passed the largest relapse that a past season has met with from this date on (with fewer than ten complete past seasons 50 degC.d: common practice, no source): the start may still move.';

@@ -20,7 +20,12 @@ insert into thaw.quality_tests values
     (7, 'gap', 'Beyond a gap of 10 degC or more in the sorted values of the calendar month (Durre et al., 2010, as quoted elsewhere).'),
     (8, 'climatology', '6 biweight standard deviations or more off the values within 7 days of the date (Durre et al., 2010, as quoted elsewhere).'),
     (9, 'lagged_range', 'Maximum 40 degC or more above the warmest minimum of three days, or minimum as far below the coldest maximum (Durre et al., 2010, details from memory).'),
-    (10, 'neighbour', 'Mean 8 degC and 4 standard deviations or more off what three neighbours let expect (Durre et al., 2010, as quoted elsewhere).');
+    (10, 'neighbour', 'Mean 8 degC and 4 standard deviations or more off what three neighbours let expect (Durre et al., 2010, as quoted elsewhere).'),
+    (16, 'range of readings', 'A reading of less than a day beyond what can be: as range.'),
+    (18, 'step of readings', 'Changed from one reading to the next by more than 3 degC (surface 10) times the square root of the minutes between, at most 25 (40) degC: the limits of the guidelines for a minute (Zahumensky, 2004, as quoted elsewhere), widened.'),
+    (19, 'spike of readings', 'Off both neighbouring readings to the same side by 0.75 of that limit (judgement).'),
+    (20, 'persistence of readings', '12 readings in a row, through an hour or more, within 0.1 degC (Zahumensky, 2004, as quoted elsewhere; the number is judgement); a surface within 0.2 degC of zero is exempt.'),
+    (22, 'naught of readings', 'Four readings or more, all 0 degC or all 0 degF.');
 
 create function thaw.mark_after_tests(mark smallint, tests_made integer, tests_failed integer) returns smallint
 language sql immutable parallel safe as $$
