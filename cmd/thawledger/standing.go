@@ -97,6 +97,9 @@ func restOfSeason(r store.StandingNow) string {
 
 // notes are what an engineer has to know of a standing beside its figures.
 func notes(r store.StandingNow) (out []string) {
+	if e := r.StandardErrorCDays; e != nil && r.Direction == string(pipeline.NotAbove) && r.IndexHighCDays < r.DesignCDays && r.IndexHighCDays+2**e >= r.DesignCDays {
+		out = append(out, "the design value lies within two standard errors of the index, which filled days give it: it may have been passed")
+	}
 	if r.DaysDoubtful != nil && *r.DaysDoubtful > 0 && r.WithoutDoubtfulLow != nil {
 		out = append(out, fmt.Sprintf("%d days rest on doubtful values; without them the index is %s degC.d", *r.DaysDoubtful,
 			bounds(*r.WithoutDoubtfulLow, *r.WithoutDoubtfulHigh, r.DesignCDays, "")))
