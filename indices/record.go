@@ -29,6 +29,21 @@ func (s *Service) bringIntoLine(ctx context.Context, t *store.Take, st *pipeline
 	return s.write(ctx, t, st, stored, merge(stored, values), true, false)
 }
 
+// whole says whether there is nothing to be filled in a record, and nothing in it
+// to do without: its indices follow from the days as they are stored.
+func whole(st *pipeline.Station, stored []store.DayRow) bool {
+	first := slices.IndexFunc(stored, func(d store.DayRow) bool { return d.Origin == pipeline.Observed })
+	if first < 0 || len(st.Neighbours) > 0 || stored[0].Day != firstSeasonStart(st, stored[first].Day) {
+		return false
+	}
+	for i := first; i < len(stored); i++ {
+		if stored[i].Origin != pipeline.Observed || isDoubtful(&stored[i]) {
+			return false
+		}
+	}
+	return true
+}
+
 // beyond adds to days those that lie between them and the stored record. A day
 // past its end that had too little for a mean was not stored, and may be inside
 // the record now.

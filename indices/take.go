@@ -100,6 +100,9 @@ func (s *Service) refill(ctx context.Context, station string, all bool) error {
 		if err != nil {
 			return err
 		}
+		if all && whole(st, stored) {
+			return index(ctx, t, st, &filled{}, stored, stored, nil, true)
+		}
 		return s.write(ctx, t, st, stored, merge(stored, nil), false, all)
 	})
 	if errors.Is(err, store.ErrBusy) {

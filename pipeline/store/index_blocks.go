@@ -44,9 +44,15 @@ func BlockStart(d, first pipeline.Day, seasonStarts ...pipeline.Day) pipeline.Da
 	return start
 }
 
-var indexColumns = []string{"station", "month", "first_day", "last_day", "thaw_season", "freeze_season",
-	"thaw_running_c_days", "thaw_curve_low_c_days", "thaw_curve_high_c_days", "thaw_sum_low_c_days", "thaw_sum_high_c_days",
-	"freeze_running_c_days", "freeze_curve_low_c_days", "freeze_curve_high_c_days", "freeze_sum_low_c_days", "freeze_sum_high_c_days"}
+var indexColumns = func() []string {
+	columns := []string{"station", "month", "first_day", "last_day", "thaw_season", "freeze_season"}
+	for _, kind := range []string{"thaw", "freeze"} {
+		for _, name := range []string{"running", "running_all", "curve_low", "curve_low_all", "curve_high", "sum_low", "sum_low_all", "sum_high"} {
+			columns = append(columns, kind+"_"+name+"_c_days")
+		}
+	}
+	return columns
+}()
 
 // WriteIndexDays puts rows, consecutive in time, in the place of all blocks that
 // hold one of their days. The rows must begin and end with blocks.
@@ -87,7 +93,7 @@ func (t *Take) indexBlock(month pipeline.Day, rows []IndexRow) []any {
 	for _, of := range []func(*IndexRow) *Indices{
 		func(r *IndexRow) *Indices { return &r.Thaw }, func(r *IndexRow) *Indices { return &r.Freeze },
 	} {
-		running := make(floats, n)
+		running := make([]pgtype.Float8, n)
 		curveLow, curveHigh, sumLow, sumHigh := numbers[:n:n], numbers[n:2*n:2*n], numbers[2*n:3*n:3*n], numbers[3*n:]
 		open := false
 		for i := range rows {
@@ -98,26 +104,27 @@ func (t *Take) indexBlock(month pipeline.Day, rows []IndexRow) []any {
 			curveLow[i], curveHigh[i], sumLow[i], sumHigh[i] = x.CurveLow, x.CurveHigh, x.SumLow, x.SumHigh
 			open = open || x.CurveLow != x.CurveHigh || x.SumLow != x.SumHigh
 		}
-		out = append(out, trimmed(running), trimmed(curveLow), nil, trimmed(sumLow), nil)
+		out = appendArray(out, running)
+		out = append(appendArray(out, curveLow), nil)
+		out = append(appendArray(out, sumLow), nil)
 		if open {
-			out[len(out)-3], out[len(out)-1] = trimmed(curveHigh), trimmed(sumHigh)
+			out[len(out)-4], out[len(out)-1] = curveHigh, sumHigh
 		}
 		numbers = make([]float64, 4*n)
 	}
 	return out
 }
 
-// trimmed leaves out what only repeats the element before it, up to the end.
-func trimmed[S ~[]E, E comparable](a S) S {
-	n := len(a)
-	for n > 1 && a[n-1] == a[n-2] {
-		n--
+// appendArray appends an array and no number or, where all elements are the same,
+// no array and that number.
+func appendArray[E comparable](out []any, a []E) []any {
+	for i := range a {
+		if a[i] != a[0] {
+			return append(out, a, nil)
+		}
 	}
-	return a[:n]
+	return append(out, nil, a[0])
 }
-
-// held returns the element for a place: the last one holds for all after it.
-func held(a []float64, i int) float64 { return a[min(i, len(a)-1)] }
 
 // DropIndexDays removes all blocks of air_index_daily that hold a day of the
 // station before first or after last.
@@ -140,7 +147,8 @@ type IndexDay struct {
 // IndexDays returns the station's indices of a kind from a day on, in order.
 func (j *Judging) IndexDays(ctx context.Context, kind pipeline.Kind, from pipeline.Day) ([]IndexDay, error) {
 	k := string(kind)
-	rows, err := j.tx.Query(ctx, `select first_day, last_day, `+k+`_season, `+k+`_curve_low_c_days, `+k+`_curve_high_c_days, `+k+`_sum_low_c_days, `+k+`_sum_high_c_days
+	rows, err := j.tx.Query(ctx, `select first_day, last_day, `+k+`_season, `+k+`_curve_low_c_days, `+k+`_curve_low_all_c_days, `+k+`_curve_high_c_days,
+			`+k+`_sum_low_c_days, `+k+`_sum_low_all_c_days, `+k+`_sum_high_c_days
 		from thaw.index_blocks where station = $1 and last_day >= $2 order by first_day`, j.station, from.Time())
 	if err != nil {
 		return nil, fmt.Errorf("read indices of %s: %w", j.station, err)
@@ -149,22 +157,31 @@ func (j *Judging) IndexDays(ctx context.Context, kind pipeline.Kind, from pipeli
 		out                                  []IndexDay
 		first, last, season                  time.Time
 		curveLow, curveHigh, sumLow, sumHigh []float64
+		curveAll, sumAll                     *float64
 	)
-	_, err = pgx.ForEachRow(rows, []any{&first, &last, &season, &curveLow, &curveHigh, &sumLow, &sumHigh}, func() error {
-		if curveHigh == nil {
-			curveHigh, sumHigh = curveLow, sumLow
-		}
+	_, err = pgx.ForEachRow(rows, []any{&first, &last, &season, &curveLow, &curveAll, &curveHigh, &sumLow, &sumAll, &sumHigh}, func() error {
 		begin := dayOf(first)
 		for day := max(begin, from); day <= dayOf(last); day++ {
 			i := int(day - begin)
-			out = append(out, IndexDay{Day: day, Season: dayOf(season), CurveLow: held(curveLow, i), CurveHigh: held(curveHigh, i),
-				SumLow: held(sumLow, i), SumHigh: held(sumHigh, i)})
+			d := IndexDay{Day: day, Season: dayOf(season), CurveLow: element(curveLow, curveAll, i), SumLow: element(sumLow, sumAll, i)}
+			d.CurveHigh, d.SumHigh = d.CurveLow, d.SumLow
+			if curveHigh != nil {
+				d.CurveHigh, d.SumHigh = curveHigh[i], sumHigh[i]
+			}
+			out = append(out, d)
 		}
-		curveHigh, sumHigh = nil, nil
 		return nil
 	})
 	if err != nil {
 		return nil, fmt.Errorf("read indices of %s: %w", j.station, err)
 	}
 	return out, nil
+}
+
+// element returns the element of an array, or the number that stands for all.
+func element(a []float64, all *float64, i int) float64 {
+	if all != nil {
+		return *all
+	}
+	return a[i]
 }

@@ -44,26 +44,34 @@ create table thaw.index_blocks (
     last_day                 date not null,
     thaw_season              date not null,
     freeze_season            date not null,
-    thaw_running_c_days      double precision[] not null,
-    thaw_curve_low_c_days    double precision[] not null,
-    thaw_curve_high_c_days   double precision[],
-    thaw_sum_low_c_days      double precision[] not null,
-    thaw_sum_high_c_days     double precision[],
-    freeze_running_c_days    double precision[] not null,
-    freeze_curve_low_c_days  double precision[] not null,
-    freeze_curve_high_c_days double precision[],
-    freeze_sum_low_c_days    double precision[] not null,
-    freeze_sum_high_c_days   double precision[],
+    thaw_running_c_days          double precision[],
+    thaw_curve_low_c_days        double precision[],
+    thaw_curve_high_c_days       double precision[],
+    thaw_sum_low_c_days          double precision[],
+    thaw_sum_high_c_days         double precision[],
+    freeze_running_c_days        double precision[],
+    freeze_curve_low_c_days      double precision[],
+    freeze_curve_high_c_days     double precision[],
+    freeze_sum_low_c_days        double precision[],
+    freeze_sum_high_c_days       double precision[],
+    thaw_running_all_c_days      double precision,
+    thaw_curve_low_all_c_days    double precision,
+    thaw_sum_low_all_c_days      double precision,
+    freeze_running_all_c_days    double precision,
+    freeze_curve_low_all_c_days  double precision,
+    freeze_sum_low_all_c_days    double precision,
+    before_day                   date not null generated always as (first_day - 1) stored,
     primary key (station, first_day),
-    check (cardinality(thaw_curve_low_c_days) between 1 and last_day - first_day + 1)
+    check (cardinality(thaw_curve_low_c_days) = last_day - first_day + 1),
+    check ((thaw_curve_low_c_days is null) <> (thaw_curve_low_all_c_days is null))
 ) with (toast_tuple_target = 8160);
 comment on table thaw.daily_blocks is 'Daily values in blocks of a month; thaw.daily_values shows them a row a day. An array has an element a day from first_day to last_day.';
 comment on column thaw.daily_blocks.station is 'Station.';
 comment on column thaw.daily_blocks.month is 'First day of the month.';
 comment on column thaw.daily_blocks.first_day is 'First day of the block.';
 comment on column thaw.daily_blocks.last_day is 'Last day of the block.';
-comment on column thaw.daily_blocks.mean_rule is 'Rule of the daily mean of the blocks days.';
-comment on column thaw.daily_blocks.mean_rules is 'The days rules where they are not all mean_rule; else null.';
+comment on column thaw.daily_blocks.mean_rule is 'Rule that made the means.';
+comment on column thaw.daily_blocks.mean_rules is 'Rules day by day, where they are not all mean_rule; else null.';
 comment on column thaw.daily_blocks.mean_c is 'Daily means, degC; null where missing.';
 comment on column thaw.daily_blocks.max_c is 'Daily maxima, degC; null if none is known.';
 comment on column thaw.daily_blocks.min_c is 'Daily minima, degC; null if none is known.';
@@ -77,7 +85,7 @@ comment on column thaw.daily_blocks.error_c is 'Standard errors of filled means,
 comment on column thaw.daily_blocks.filled_from is 'Stations that means were filled from; null if none was.';
 comment on column thaw.daily_blocks.tests_made is 'Quality tests made, a bit a test; null if none.';
 comment on column thaw.daily_blocks.tests_failed is 'Quality tests failed, a bit a test; null if none.';
-comment on table thaw.index_blocks is 'Daily indices in blocks of a month, or less where a thaw or freeze year begins; thaw.air_index_daily shows them a row a day. An array has an element a day from first_day on; its last element holds for all days after it.';
+comment on table thaw.index_blocks is 'Daily indices in blocks of a month, or less where a thaw or freeze year begins; thaw.air_index_daily shows them a row a day. An array has an element a day from first_day to last_day; where all are the same it is null, and the number stands in the column with all in its name.';
 comment on column thaw.index_blocks.station is 'Station.';
 comment on column thaw.index_blocks.month is 'First day of the month.';
 comment on column thaw.index_blocks.first_day is 'First day of the block.';
@@ -94,6 +102,13 @@ comment on column thaw.index_blocks.freeze_curve_low_c_days is 'Freezing: lowest
 comment on column thaw.index_blocks.freeze_curve_high_c_days is 'Freezing: highest possible ones; null if all are those of curve_low.';
 comment on column thaw.index_blocks.freeze_sum_low_c_days is 'Freezing: lowest possible sum indices to date, degC.d.';
 comment on column thaw.index_blocks.freeze_sum_high_c_days is 'Freezing: highest possible ones; null if all are those of sum_low.';
+comment on column thaw.index_blocks.thaw_running_all_c_days is 'thaw_running_c_days of every day, if it is the same on all.';
+comment on column thaw.index_blocks.thaw_curve_low_all_c_days is 'thaw_curve_low_c_days of every day, if it is the same on all.';
+comment on column thaw.index_blocks.thaw_sum_low_all_c_days is 'thaw_sum_low_c_days of every day, if it is the same on all.';
+comment on column thaw.index_blocks.freeze_running_all_c_days is 'freeze_running_c_days of every day, if it is the same on all.';
+comment on column thaw.index_blocks.freeze_curve_low_all_c_days is 'freeze_curve_low_c_days of every day, if it is the same on all.';
+comment on column thaw.index_blocks.freeze_sum_low_all_c_days is 'freeze_sum_low_c_days of every day, if it is the same on all.';
+comment on column thaw.index_blocks.before_day is 'The day before first_day: a day less this is its place in an array.';
 create index on thaw.daily_blocks (month);
 create index on thaw.index_blocks (month);
 -- A block lies in its row, not beside it.
@@ -171,23 +186,22 @@ comment on column thaw.daily_values.tests_failed is 'Quality tests that the days
 
 create view thaw.air_index_daily as
 select c.day, b.station, b.thaw_season, b.freeze_season,
-       b.thaw_running_c_days[least(i.i, cardinality(b.thaw_running_c_days))] as thaw_running_c_days,
-       case when b.thaw_curve_high_c_days is null or b.thaw_curve_high_c_days[least(i.i, cardinality(b.thaw_curve_high_c_days))] = b.thaw_curve_low_c_days[least(i.i, cardinality(b.thaw_curve_low_c_days))] then b.thaw_curve_low_c_days[least(i.i, cardinality(b.thaw_curve_low_c_days))] end as thaw_curve_c_days,
-       b.thaw_curve_low_c_days[least(i.i, cardinality(b.thaw_curve_low_c_days))] as thaw_curve_low_c_days,
-       case when b.thaw_curve_high_c_days is null then b.thaw_curve_low_c_days[least(i.i, cardinality(b.thaw_curve_low_c_days))] else b.thaw_curve_high_c_days[least(i.i, cardinality(b.thaw_curve_high_c_days))] end as thaw_curve_high_c_days,
-       case when b.thaw_sum_high_c_days is null or b.thaw_sum_high_c_days[least(i.i, cardinality(b.thaw_sum_high_c_days))] = b.thaw_sum_low_c_days[least(i.i, cardinality(b.thaw_sum_low_c_days))] then b.thaw_sum_low_c_days[least(i.i, cardinality(b.thaw_sum_low_c_days))] end as thaw_sum_c_days,
-       b.thaw_sum_low_c_days[least(i.i, cardinality(b.thaw_sum_low_c_days))] as thaw_sum_low_c_days,
-       case when b.thaw_sum_high_c_days is null then b.thaw_sum_low_c_days[least(i.i, cardinality(b.thaw_sum_low_c_days))] else b.thaw_sum_high_c_days[least(i.i, cardinality(b.thaw_sum_high_c_days))] end as thaw_sum_high_c_days,
-       b.freeze_running_c_days[least(i.i, cardinality(b.freeze_running_c_days))] as freeze_running_c_days,
-       case when b.freeze_curve_high_c_days is null or b.freeze_curve_high_c_days[least(i.i, cardinality(b.freeze_curve_high_c_days))] = b.freeze_curve_low_c_days[least(i.i, cardinality(b.freeze_curve_low_c_days))] then b.freeze_curve_low_c_days[least(i.i, cardinality(b.freeze_curve_low_c_days))] end as freeze_curve_c_days,
-       b.freeze_curve_low_c_days[least(i.i, cardinality(b.freeze_curve_low_c_days))] as freeze_curve_low_c_days,
-       case when b.freeze_curve_high_c_days is null then b.freeze_curve_low_c_days[least(i.i, cardinality(b.freeze_curve_low_c_days))] else b.freeze_curve_high_c_days[least(i.i, cardinality(b.freeze_curve_high_c_days))] end as freeze_curve_high_c_days,
-       case when b.freeze_sum_high_c_days is null or b.freeze_sum_high_c_days[least(i.i, cardinality(b.freeze_sum_high_c_days))] = b.freeze_sum_low_c_days[least(i.i, cardinality(b.freeze_sum_low_c_days))] then b.freeze_sum_low_c_days[least(i.i, cardinality(b.freeze_sum_low_c_days))] end as freeze_sum_c_days,
-       b.freeze_sum_low_c_days[least(i.i, cardinality(b.freeze_sum_low_c_days))] as freeze_sum_low_c_days,
-       case when b.freeze_sum_high_c_days is null then b.freeze_sum_low_c_days[least(i.i, cardinality(b.freeze_sum_low_c_days))] else b.freeze_sum_high_c_days[least(i.i, cardinality(b.freeze_sum_high_c_days))] end as freeze_sum_high_c_days
+       coalesce(b.thaw_running_c_days[c.day - b.before_day], b.thaw_running_all_c_days) as thaw_running_c_days,
+       case when b.thaw_curve_high_c_days is null or b.thaw_curve_high_c_days[c.day - b.before_day] = coalesce(b.thaw_curve_low_c_days[c.day - b.before_day], b.thaw_curve_low_all_c_days) then coalesce(b.thaw_curve_low_c_days[c.day - b.before_day], b.thaw_curve_low_all_c_days) end as thaw_curve_c_days,
+       coalesce(b.thaw_curve_low_c_days[c.day - b.before_day], b.thaw_curve_low_all_c_days) as thaw_curve_low_c_days,
+       case when b.thaw_curve_high_c_days is null then coalesce(b.thaw_curve_low_c_days[c.day - b.before_day], b.thaw_curve_low_all_c_days) else b.thaw_curve_high_c_days[c.day - b.before_day] end as thaw_curve_high_c_days,
+       case when b.thaw_sum_high_c_days is null or b.thaw_sum_high_c_days[c.day - b.before_day] = coalesce(b.thaw_sum_low_c_days[c.day - b.before_day], b.thaw_sum_low_all_c_days) then coalesce(b.thaw_sum_low_c_days[c.day - b.before_day], b.thaw_sum_low_all_c_days) end as thaw_sum_c_days,
+       coalesce(b.thaw_sum_low_c_days[c.day - b.before_day], b.thaw_sum_low_all_c_days) as thaw_sum_low_c_days,
+       case when b.thaw_sum_high_c_days is null then coalesce(b.thaw_sum_low_c_days[c.day - b.before_day], b.thaw_sum_low_all_c_days) else b.thaw_sum_high_c_days[c.day - b.before_day] end as thaw_sum_high_c_days,
+       coalesce(b.freeze_running_c_days[c.day - b.before_day], b.freeze_running_all_c_days) as freeze_running_c_days,
+       case when b.freeze_curve_high_c_days is null or b.freeze_curve_high_c_days[c.day - b.before_day] = coalesce(b.freeze_curve_low_c_days[c.day - b.before_day], b.freeze_curve_low_all_c_days) then coalesce(b.freeze_curve_low_c_days[c.day - b.before_day], b.freeze_curve_low_all_c_days) end as freeze_curve_c_days,
+       coalesce(b.freeze_curve_low_c_days[c.day - b.before_day], b.freeze_curve_low_all_c_days) as freeze_curve_low_c_days,
+       case when b.freeze_curve_high_c_days is null then coalesce(b.freeze_curve_low_c_days[c.day - b.before_day], b.freeze_curve_low_all_c_days) else b.freeze_curve_high_c_days[c.day - b.before_day] end as freeze_curve_high_c_days,
+       case when b.freeze_sum_high_c_days is null or b.freeze_sum_high_c_days[c.day - b.before_day] = coalesce(b.freeze_sum_low_c_days[c.day - b.before_day], b.freeze_sum_low_all_c_days) then coalesce(b.freeze_sum_low_c_days[c.day - b.before_day], b.freeze_sum_low_all_c_days) end as freeze_sum_c_days,
+       coalesce(b.freeze_sum_low_c_days[c.day - b.before_day], b.freeze_sum_low_all_c_days) as freeze_sum_low_c_days,
+       case when b.freeze_sum_high_c_days is null then coalesce(b.freeze_sum_low_c_days[c.day - b.before_day], b.freeze_sum_low_all_c_days) else b.freeze_sum_high_c_days[c.day - b.before_day] end as freeze_sum_high_c_days
 from thaw.index_blocks b
-join thaw.calendar c on c.month = b.month and c.day between b.first_day and b.last_day
-cross join lateral (select c.day - b.first_day + 1) as i (i);
+join thaw.calendar c on c.month = b.month and c.day between b.first_day and b.last_day;
 comment on view thaw.air_index_daily is 'Thawing and freezing indices of the air up to the end of each day, by both definitions.';
 comment on column thaw.air_index_daily.day is 'The station''s day.';
 comment on column thaw.air_index_daily.station is 'Station.';
