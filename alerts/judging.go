@@ -174,10 +174,13 @@ func (s *Service) judgeSeason(ctx context.Context, j *store.Judging, d *store.De
 		return nil
 	}
 	change.Why = judge.Why(past, v, before != nil && season.Through > before.Day)
+	if season.Over && change.From == pipeline.Expected {
+		change.Why = judge.SeasonOver
+	}
 	if replaced {
 		change.Why = judge.Replaced
 	}
-	change.Announce = judge.Told(d.Direction, change.From, row.State) && s.open(d, season, past != nil || replaced)
+	change.Announce = judge.Told(d.Direction, change.From, row.State) && s.open(d, season, past != nil || replaced, change.From == pipeline.Expected)
 	return j.AddStandingChange(ctx, row, change)
 }
 
@@ -205,11 +208,12 @@ func (s *Service) keepExceedance(ctx context.Context, j *store.Judging, row *sto
 
 // open says whether a season's changes are told: it must not be over, neither by
 // its record nor by the clock. What a not_below season comes to is only known at
-// its end, so that is told for another 45 days, if it was judged while open.
-func (s *Service) open(d *store.Design, season store.SeasonState, judgedBefore bool) bool {
+// its end, so that is told for another 45 days, if it was judged while open; and so
+// is what became of a season that was expected to end on the wrong side.
+func (s *Service) open(d *store.Design, season store.SeasonState, judgedBefore, expected bool) bool {
 	lastDay := pipeline.DayOf(yearAfter(season.Start)) - 1
 	today := pipeline.Day(s.Now().Unix() / 86400)
-	if d.Direction == pipeline.NotBelow {
+	if d.Direction == pipeline.NotBelow || expected {
 		return judgedBefore && today <= lastDay+45
 	}
 	return !season.Over && today <= lastDay

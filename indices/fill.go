@@ -23,6 +23,10 @@ type filled struct {
 	fills    []filling.Filled // those whose error is known
 }
 
+// mostTail is for how many days past its last observed one neighbours carry a
+// record on: after a year a station is closed (common practice, no source).
+const mostTail = 366
+
 // fill tests the days of a record, unless they are tested, and completes it: a straight line over short gaps, then regression on
 // the station's neighbours, then, where the settings allow it, the mean of the
 // date. Neighbours carry the record on past its last observed day. What nothing
@@ -51,6 +55,7 @@ func (s *Service) fill(ctx context.Context, t *store.Take, st *pipeline.Station,
 			tail = max(tail, n.Points[k-1].Day)
 		}
 	}
+	tail = min(tail, last+mostTail)
 	full := tail == last
 	for i := range days {
 		full = full && days[i].Origin == pipeline.Observed
@@ -66,8 +71,8 @@ func (s *Service) fill(ctx context.Context, t *store.Take, st *pipeline.Station,
 		f.days = append(f.days, v)
 	}
 	f.fillEach(st, around)
-	for n := len(f.days); n > 0 && f.days[n-1].Origin == pipeline.Missing; n-- {
-		f.days = f.days[:n-1] // nothing past the end
+	for n := len(f.days); n > 0 && (f.days[n-1].Origin == pipeline.Missing || f.days[n-1].Origin == pipeline.ByClimate); n-- {
+		f.days = f.days[:n-1] // the climate alone carries nothing on
 	}
 	return f, nil
 }

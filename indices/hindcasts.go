@@ -95,16 +95,16 @@ func (s *Service) makeOutlook(ctx context.Context, station string) error {
 	if err != nil {
 		return err
 	}
-	if err := m.Keep(ctx, s.DB, true); err != nil {
+	if err := m.keepScores(ctx, s.DB); err != nil {
 		return err
 	}
-	var from *pipeline.Day
+	after := m.through + 1 // the seasons that this day is in are open
+	err = s.DB.OutlookMade(ctx, station, wanted, m.through, degreeday.WindowAt(st.ThawYear, after).First, degreeday.WindowAt(st.FreezeYear, after).First, m.rows())
+	if err != nil {
+		return err
+	}
 	if len(m.Outlooks) > 0 {
-		from = &m.Outlooks[0].Row.Through
+		s.Log.Info("outlook made", zap.String("station", station), zap.Int("design_values", len(m.Outlooks)))
 	}
-	if err := s.DB.OutlookMade(ctx, station, wanted, from); err != nil || from == nil {
-		return err
-	}
-	s.Log.Info("outlook made", zap.String("station", station), zap.Int("design_values", len(m.Outlooks)))
 	return s.Nudge()
 }

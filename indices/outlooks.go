@@ -40,19 +40,21 @@ type StationOutlooks struct {
 	Outlooks []MadeOutlook
 	Notes    []string // what could not be made, and why
 
-	scores map[OutlookIndex][]store.OutlookScoreRow
-	order  []OutlookIndex
+	through pipeline.Day // last day used; the day before 1970 if there is no record
+	scores  map[OutlookIndex][]store.OutlookScoreRow
+	order   []OutlookIndex
 }
 
 // Outlooks makes outlooks of a station's seasons that are not over for every
 // design value in force on it, from the days up to a day.
 func (s *Service) Outlooks(ctx context.Context, st *pipeline.Station, until pipeline.Day) (*StationOutlooks, error) {
-	m := &StationOutlooks{Station: st.ID, scores: map[OutlookIndex][]store.OutlookScoreRow{}}
+	m := &StationOutlooks{Station: st.ID, through: -1, scores: map[OutlookIndex][]store.OutlookScoreRow{}}
 	days, err := DaysUntil(ctx, s.DB, st.ID, until)
 	if err != nil || len(days) == 0 {
 		return m, err
 	}
 	through := days[len(days)-1].Day
+	m.through = through
 	designs, err := s.DB.AirDesigns(ctx, st.ID, degreeday.WindowAt(st.ThawYear, through+1).First, degreeday.WindowAt(st.FreezeYear, through+1).First)
 	if err != nil {
 		return nil, err
@@ -135,22 +137,31 @@ func (s *Service) outlook(m *StationOutlooks, record *outlook.Record, days []deg
 	}
 }
 
-// Keep stores what was made; scores only if asked for.
-func (m *StationOutlooks) Keep(ctx context.Context, db *store.DB, scores bool) error {
+func (m *StationOutlooks) rows() []store.OutlookRow {
 	rows := make([]store.OutlookRow, len(m.Outlooks))
 	for i := range m.Outlooks {
 		rows[i] = m.Outlooks[i].Row
 	}
-	if len(rows) > 0 {
+	return rows
+}
+
+// Keep stores what was made; scores only if asked for.
+func (m *StationOutlooks) Keep(ctx context.Context, db *store.DB, scores bool) error {
+	if rows := m.rows(); len(rows) > 0 {
 		if err := db.WriteOutlooks(ctx, rows); err != nil {
 			return err
 		}
 	}
+	if scores {
+		return m.keepScores(ctx, db)
+	}
+	return nil
+}
+
+func (m *StationOutlooks) keepScores(ctx context.Context, db *store.DB) error {
 	for _, of := range m.order {
-		if scores {
-			if err := db.WriteOutlookScores(ctx, m.Station, of.Kind, of.Definition, m.scores[of]); err != nil {
-				return err
-			}
+		if err := db.WriteOutlookScores(ctx, m.Station, of.Kind, of.Definition, m.scores[of]); err != nil {
+			return err
 		}
 	}
 	return nil

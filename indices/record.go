@@ -29,6 +29,16 @@ func (s *Service) bringIntoLine(ctx context.Context, t *store.Take, st *pipeline
 	return s.write(ctx, t, st, stored, merge(stored, values), true, false)
 }
 
+// begun returns the first observed day of stored days, or the last day if none is.
+func begun(stored []store.DayRow) pipeline.Day {
+	for i := range stored {
+		if stored[i].Origin == pipeline.Observed {
+			return stored[i].Day
+		}
+	}
+	return stored[len(stored)-1].Day
+}
+
 // whole says whether there is nothing to be filled in a record, and nothing in it
 // to do without: its indices follow from the days as they are stored.
 func whole(st *pipeline.Station, stored []store.DayRow) bool {
@@ -176,11 +186,12 @@ func (s *Service) write(ctx context.Context, t *store.Take, st *pipeline.Station
 		return err
 	}
 	if d.observed {
-		if err := t.MarkNeighbours(ctx); err != nil {
-			return err
-		}
+		t.ObservedChanged()
 	}
-	return index(ctx, t, st, f, stored, rows, d.indexed, all)
+	if err := index(ctx, t, st, f, stored, rows, d.indexed, all); err != nil || len(d.days) == 0 {
+		return err
+	}
+	return t.MarkJoined(ctx)
 }
 
 // index works the indices of changed days out, or with all those of the whole
@@ -210,7 +221,7 @@ func index(ctx context.Context, t *store.Take, st *pipeline.Station, f *filled, 
 		return nil
 	}
 	from := stretches[0].first
-	if all || len(stored) > 0 && (stored[0].Day < r.first() || stored[len(stored)-1].Day > r.end()) {
+	if all || len(stored) > 0 && (stored[0].Day < r.first() || stored[len(stored)-1].Day > r.end() || begun(stored) < r.begin) {
 		if err := r.dropOthers(ctx, t); err != nil {
 			return err
 		}

@@ -227,6 +227,14 @@ func (r *record) writeIndices(ctx context.Context, t *store.Take, stretches []st
 			return err
 		}
 	}
+	// What past seasons were decides when the onset of those at the end holds; what
+	// other years were bounds doubtful days that are left out.
+	for _, kind := range kinds {
+		season(kind, r.end())
+		for d := range r.doubtful {
+			season(kind, d)
+		}
+	}
 	return t.WriteSeasons(ctx, rows)
 }
 

@@ -137,6 +137,10 @@ func Told(direction pipeline.Direction, before, after pipeline.State) bool {
 // the one that it was judged by.
 const Replaced = "design value replaced"
 
+// SeasonOver is why a season that was expected to end on the wrong side is so no
+// longer once it has ended.
+const SeasonOver = "season over"
+
 // Why says in a word what brought a change of state about: before is nil for
 // the first judgement of a season, progressed says that the season has gone on
 // since. A level that falls, or that changes while the season has not gone on,

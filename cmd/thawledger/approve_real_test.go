@@ -11,6 +11,7 @@ import (
 // Once a record is approved, corrections of its days wait, and what is decided
 // on them holds; later days, and repetitions that change nothing, do not wait.
 func TestApproval(t *testing.T) {
+	t.Parallel()
 	for _, decision := range []string{"accept", "reject"} {
 		t.Run(decision, func(t *testing.T) {
 			p := newPlace(t, fmt.Sprintf(hourlySettings, "Z", ""), nil)

@@ -24,6 +24,7 @@ func gzipped(text string) string {
 // used. Files that unpacking, fetching and disks make bad are tried in the
 // packages that do these.
 func TestBadInput(t *testing.T) {
+	t.Parallel()
 	const good = "2025-07-10 00:00,1\n2025-07-10 01:00,2\n2025-07-10 02:00,3\n2025-07-10 03:00,4\n"
 	const held, done = "held_back", "done"
 	cases := []struct {

@@ -50,6 +50,9 @@ func TestKilledDuringLoad(t *testing.T) {
 		// The moment is what is being tried out; nothing is waited for.
 		time.Sleep(time.Duration(random.Int64N(int64(120 * time.Millisecond))))
 		base := rough.postmaster(t)
+		if kills%3 == 2 {
+			base = rough.awaitPostmaster(t, p)
+		}
 		if err := p.cmd.Process.Kill(); errors.Is(err, os.ErrProcessDone) {
 			continue // done before its time: no kill
 		} else if err != nil {
@@ -150,6 +153,28 @@ func (s crashSite) postmaster(t *testing.T) int {
 	}
 	pid, _ := strconv.Atoi(strings.SplitN(string(text), "\n", 2)[0])
 	return pid
+}
+
+// awaitPostmaster waits until the private server runs, and returns its process; 0
+// if the daemon has ended by itself before. A server that was killed leaves its
+// number behind.
+func (s crashSite) awaitPostmaster(t *testing.T, p *process) int {
+	t.Helper()
+	tick := time.NewTicker(2 * time.Millisecond)
+	defer tick.Stop()
+	deadline := time.After(time.Minute)
+	for {
+		if pid := s.postmaster(t); pid != 0 && syscall.Kill(pid, 0) == nil {
+			return pid
+		}
+		select {
+		case <-tick.C:
+		case <-p.ended:
+			return 0
+		case <-deadline:
+			t.Fatalf("no server came\n%s", p.said())
+		}
+	}
 }
 
 // awaitOpenParts waits until the daemon has parts on their way, and returns how

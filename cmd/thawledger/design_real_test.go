@@ -91,6 +91,7 @@ func says(t *testing.T, what, text string, wants ...string) {
 // TestDesign computes a design value from a record with gaps, puts what is printed
 // into the settings, and holds the record against it.
 func TestDesign(t *testing.T) {
+	t.Parallel()
 	july := func(year, d int) pipeline.Day { return pipeline.DayOf(year, time.July, d) }
 	files := map[string]string{
 		"feed/tarn.csv": "date,station,tmax,tmin\n" + designRecord("TARN", july(2008, 20), july(2008, 25)), // a cool summer

@@ -27,6 +27,7 @@ func daysOf(first string, n int, as func(c float64) float64) string {
 // A file in degF, declared as degC, is held back once the record knows better,
 // and used if somebody says so.
 func TestWrongUnitIsHeldBack(t *testing.T) {
+	t.Parallel()
 	p := newPlace(t, fmt.Sprintf(apartSettings, "data", "feed"), nil)
 	same := func(c float64) float64 { return c }
 	degF := func(c float64) float64 { return c*1.8 + 32 }

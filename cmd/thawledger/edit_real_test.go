@@ -12,6 +12,7 @@ import (
 // Edits change the days that they speak of, show who and why, and leave no trace
 // once undone.
 func TestEdits(t *testing.T) {
+	t.Parallel()
 	// two days by the clock of the station, UTC; three hours of each
 	file := hours(0, 1, 2, 3) + "2025-07-11 00:00,10.0\n2025-07-11 01:00,10.0\n2025-07-11 02:00,40.0\n"
 	p := newPlace(t, fmt.Sprintf(hourlySettings, "Z", ""), map[string]string{"feed/a.csv": file})

@@ -30,6 +30,7 @@ func warmAndColdYears() string {
 // shown skill: the year stands at 880 degC.d by the end of July, 400 short,
 // and past years have added some 250 to 550 from then on.
 func TestExpectedFromFileToStanding(t *testing.T) {
+	t.Parallel()
 	settings := strings.Replace(outlookSettings, "index: 50,", "index: 1270,", 1)
 	p := newPlace(t, settings, map[string]string{"feed/a.csv": warmAndColdYears()})
 	p.run(t, "run", "--until-idle")
@@ -50,5 +51,19 @@ func TestExpectedFromFileToStanding(t *testing.T) {
 	p.run(t, "run", "--until-idle")
 	if again := p.rows(t, `select thaw.fingerprint(), (select max(change_id) from thaw.standing_changes)`); fmt.Sprint(again) != fmt.Sprint(before) {
 		t.Errorf("judged again: %v; want %v", again, before)
+	}
+
+	// The summer so far was wrong: what it let expect no longer holds.
+	p.run(t, "edit", "exclude", "TARN", "--from", "2026-03-20", "--to", "2026-07-31", "--reason", "sensor in the sun")
+	p.run(t, "run", "--until-idle")
+	now := `select state, expected, day, outlook_through, probability_low < 0.5 from thaw.standings where surface = 'gravel' and season = '2026'`
+	if got := p.rows(t, now); got[0] != "(within,f,2026-03-19,2026-03-19,t)" {
+		t.Errorf("without the summer: %v", got)
+	}
+	// Too few past years are left for any outlook.
+	p.run(t, "edit", "exclude", "TARN", "--from", "1985-01-01", "--to", "2012-07-31", "--reason", "another place")
+	p.run(t, "run", "--until-idle")
+	if got := p.rows(t, now); got[0] != "(within,f,2026-03-19,,)" {
+		t.Errorf("without past years: %v", got)
 	}
 }

@@ -21,6 +21,7 @@ func (p *place) feedRead(t *testing.T, stdin string, files ...string) (status in
 
 // Files are taken by hand whether a daemon runs or not, and the same bytes once.
 func TestFeedRead(t *testing.T) {
+	t.Parallel()
 	p := newPlace(t, fmt.Sprintf(hourlySettings, "Z", ""), map[string]string{
 		"by-hand/a.csv": hours(0, 1, 2, 3, 4, 5) + "2025-07-10 05:00,x\n", "by-hand/b.csv": hours(6, 6), "feed/found.csv": hours(20, 1),
 	})

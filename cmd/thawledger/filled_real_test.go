@@ -73,6 +73,7 @@ func neighbours() (tarn, fell, strip string) {
 // Gaps and the end of a record are filled from a neighbour, whatever comes first;
 // what the neighbour corrects comes through; and what rests on it says so.
 func TestFilledFromANeighbour(t *testing.T) {
+	t.Parallel()
 	tarn, fell, strip := neighbours()
 	p := newPlace(t, neighbourSettings, map[string]string{"air/TARN.csv": tarn, "surface/STRIP.csv": strip})
 	p.run(t, "run", "--until-idle")

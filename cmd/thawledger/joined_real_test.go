@@ -43,6 +43,7 @@ sites:
 // A joined record takes each member's days in its time, adjusts daily values and
 // not the index, and follows what is corrected in a member.
 func TestJoinedRecord(t *testing.T) {
+	t.Parallel()
 	constant := func(first string, n int, c float64) string {
 		return daysOf(first, n, func(float64) float64 { return c })
 	}

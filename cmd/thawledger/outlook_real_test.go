@@ -67,6 +67,7 @@ func everyThirdYear(last string) string {
 // of the air. Every freeze year has 20 days of thaw, so that 2019-20 comes to 346
 // degC.d by the sum, 8304 K.h, and falls short of 8400.
 func TestOutlookFromFileToTable(t *testing.T) {
+	t.Parallel()
 	p := newPlace(t, outlookSettings, map[string]string{"feed/a.csv": everyThirdYear("2020-07-05")})
 	p.run(t, "run", "--until-idle") // makes outlooks too
 	// those of thirteen leads, raw and moved, from earlier and from other years, of two indices

@@ -13,6 +13,7 @@ import (
 // A file on a web server is read as it grows, and a server that is away is said
 // and waited for.
 func TestRemoteFeed(t *testing.T) {
+	t.Parallel()
 	text, at := hours(0, 1, 2), time.Date(2025, 7, 11, 0, 0, 0, 0, time.UTC)
 	s := httptest.NewServer(http.HandlerFunc(func(w http.ResponseWriter, r *http.Request) {
 		if r.Header.Get("Authorization") != "Bearer token" {

@@ -42,6 +42,7 @@ const readingsByHour = `select to_char(start_utc, 'DD HH24'), value_c, name from
 // A reread with a corrected zone leaves no reading of the old zone behind, the
 // history shows both, and the tables are those of a load by the right layout.
 func TestRereadWithAnotherZone(t *testing.T) {
+	t.Parallel()
 	files := map[string]string{"feed/a.csv": hours(0, 1, 2, 3, 4, 5, 6), "feed/b.csv": hours(6, 7, 8, 9)}
 	right := newPlace(t, fmt.Sprintf(hourlySettings, "+03:00", ""), files)
 	right.run(t, "run", "--until-idle")
@@ -71,6 +72,7 @@ func TestRereadWithAnotherZone(t *testing.T) {
 // What had lost against a batch, or was repeated by it, counts again where the
 // batch, read again, has nothing.
 func TestRereadGivesBack(t *testing.T) {
+	t.Parallel()
 	p := newPlace(t, fmt.Sprintf(hourlySettings, "Z", ""), map[string]string{"feed/a.csv": hours(0, 1, 1, 1, 1)})
 	p.run(t, "run", "--until-idle")
 	p.write(t, "feed/b.csv", hours(2, 1, 9, 9)) // at 02:00 the same, at 03:00 another value
@@ -88,6 +90,7 @@ func TestRereadGivesBack(t *testing.T) {
 // A file that replaces its span withdraws what it does not repeat, whichever of
 // two files comes first, and nothing outside its span.
 func TestReplacesSpan(t *testing.T) {
+	t.Parallel()
 	older, newer := hours(0, 1, 2, 3, 4, 5, 6), "time,t\n2025-07-10 01:00,9\n2025-07-10 04:00,9\n"
 	want := []string{`("10 00",1,a.csv)`, `("10 01",9,b.csv)`, `("10 04",9,b.csv)`, `("10 05",6,a.csv)`}
 	settings := fmt.Sprintf(hourlySettings, "Z", ", replaces_span: true")

@@ -71,6 +71,7 @@ func appendGap(out []Value, before, after Value, known []Value, fillDays int, ex
 		if len(known) > 0 && known[0].Day == v.Day {
 			if known[0].Own() {
 				v = known[0]
+				v.ErrorC, v.HasError, v.From = 0, false, "" // of an earlier filling
 			}
 			known = known[1:]
 		}

@@ -207,6 +207,9 @@ func check(kind pipeline.Kind, w Window, baseC float64, days []DayMean, recordEn
 				panic(fmt.Sprintf("degreeday: expected excesses %v and %v degC of %s day %s", m.AboveC, m.BelowC, m.Origin, m.Day))
 			}
 		case pipeline.Missing:
+			if m.HasError {
+				panic(fmt.Sprintf("degreeday: missing day %s has the error of a filled one", m.Day))
+			}
 			if !isTemperature(m.LowC) || !isTemperature(m.HighC) || m.LowC > m.HighC {
 				panic(fmt.Sprintf("degreeday: %v to %v degC of missing day %s are no bounds", m.LowC, m.HighC, m.Day))
 			}

@@ -115,6 +115,10 @@ func (r *reader) joinedRecords(s *Settings, stations map[string]*pipeline.Statio
 			case of.UTCOffset != st.UTCOffset || of.DayStarts != st.DayStarts:
 				r.fault(at, "", "give both the same utc_offset and day_starts", "the days of record %s are not those of its member %s", st.ID, m.Station)
 			}
+			if of.Measures != st.Measures {
+				r.fault(at, "", "join stations that measure the same, and write measures as they do", "record %s measures the %s, its member %s the %s",
+					st.ID, st.Measures, m.Station, of.Measures)
+			}
 			last := k == len(st.Joined)-1
 			switch {
 			case last && m.Until != nil:

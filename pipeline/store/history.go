@@ -11,7 +11,8 @@ import (
 )
 
 // stateHistory keeps, adds and retires dated facts. A station whose days of
-// maintenance change is marked to be made anew.
+// maintenance change is marked to be made anew, one whose possible breaks change
+// to have its indices worked out anew.
 func stateHistory(ctx context.Context, tx pgx.Tx, s Stated) error {
 	kept := []int64{}
 	for _, st := range s.Stations {
@@ -28,16 +29,24 @@ func stateHistory(ctx context.Context, tx pgx.Tx, s Stated) error {
 				return fmt.Errorf("state history of station %s: %w", st.ID, err)
 			}
 			kept = append(kept, id)
-			if isNew && f.What == pipeline.Maintenance {
-				if err := markAnew(ctx, tx, st.ID); err != nil {
-					return fmt.Errorf("mark station %s: %w", st.ID, err)
-				}
+			if !isNew {
+				continue
+			}
+			if f.What == pipeline.Maintenance {
+				err = markAnew(ctx, tx, st.ID)
+			} else if f.What != pipeline.Visit && f.What != pipeline.Outage {
+				_, err = tx.Exec(ctx, `update thaw.stations set reindex = true where station = $1`, st.ID)
+			}
+			if err != nil {
+				return fmt.Errorf("mark station %s: %w", st.ID, err)
 			}
 		}
 	}
 	_, err := tx.Exec(ctx, `with gone as (update thaw.station_history set retired_at = clock_timestamp()
 			where retired_at is null and not history_id = any($1) returning station, what)
-		update thaw.stations set recompute = true where station in (select station from gone where what = 'maintenance')`, kept)
+		update thaw.stations s set recompute = recompute or maintained, reindex = reindex or broken
+		from (select station, bool_or(what = 'maintenance') as maintained, bool_or(what <> 'maintenance') as broken
+			from gone where what not in ('visit', 'outage') group by station) g where g.station = s.station`, kept)
 	if err != nil {
 		return fmt.Errorf("retire station history: %w", err)
 	}

@@ -50,10 +50,13 @@ func neighbours(ctx context.Context, q querier, station string) ([]string, error
 	return out, nil
 }
 
-// MarkNeighbours marks the stations that are filled from this one to be filled
-// anew: its observed days are not what they were. They are marked even if they
-// are already, see Reindexed.
-func (t *Take) MarkNeighbours(ctx context.Context) error {
+// ObservedChanged says that the station's observed days are not what they were:
+// AddChange then marks the stations that are filled from it.
+func (t *Take) ObservedChanged() { t.observed = true }
+
+// markNeighbours marks the stations that are filled from this one to be filled
+// anew, even if they are already, see Reindexed.
+func (t *Take) markNeighbours(ctx context.Context) error {
 	_, err := t.tx.Exec(ctx, `update thaw.stations set refill = true
 		where station in (select station from thaw.station_neighbours where neighbour = $1)`, t.station)
 	if err != nil {

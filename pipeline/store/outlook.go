@@ -153,6 +153,10 @@ func skillOf(value, low, high *float64) *OutlookSkill {
 // WriteOutlooks puts rows, in one transaction, in the place of those of the same
 // station, index, season, day and threshold.
 func (db *DB) WriteOutlooks(ctx context.Context, rows []OutlookRow) error {
+	return db.within(ctx, func(tx pgx.Tx) error { return writeOutlooks(ctx, tx, rows) })
+}
+
+func writeOutlooks(ctx context.Context, tx pgx.Tx, rows []OutlookRow) error {
 	batch := &pgx.Batch{}
 	for i := range rows {
 		r := &rows[i]
@@ -183,12 +187,10 @@ func (db *DB) WriteOutlooks(ctx context.Context, rows []OutlookRow) error {
 			r.ProbabilityHigh, r.Passed, dateOf(r.PassDay10), dateOf(r.PassDay50), dateOf(r.PassDay90), r.End10, r.End50, r.End90,
 			r.Members, r.Which, r.LeadMonth, r.ScoredYears, skill, skillLow, skillHigh, brier, brierLow, brierHigh, r.AnnouncedAllowed)
 	}
-	return db.within(ctx, func(tx pgx.Tx) error {
-		if err := tx.SendBatch(ctx, batch).Close(); err != nil {
-			return fmt.Errorf("write outlooks: %w", err)
-		}
-		return nil
-	})
+	if err := tx.SendBatch(ctx, batch).Close(); err != nil {
+		return fmt.Errorf("write outlooks: %w", err)
+	}
+	return nil
 }
 
 // Outlook returns the latest outlook for a design value in a season, that of the

@@ -3,6 +3,7 @@ package store
 import (
 	"context"
 	"fmt"
+	"time"
 
 	"github.com/jackc/pgx/v5"
 
@@ -42,17 +43,37 @@ func (db *DB) BeginOutlook(ctx context.Context, station string) (st *pipeline.St
 	return st, wanted, err
 }
 
-// OutlookMade records that the outlooks which were asked for have been made; from
-// is nil if there are none, or the day from which the judge has to look at them.
-func (db *DB) OutlookMade(ctx context.Context, station string, wanted int64, from *pipeline.Day) error {
+// OutlookMade stores the outlooks that were made, in the place of all that stand
+// for the seasons which are open at the end of the record: those begun on thaw
+// and freeze or later. Of these only outlooks of earlier days stay, and only where
+// one could be made: what a longer record, or one with more past years, let expect
+// no longer holds. It records that what was asked for, as BeginOutlook said, is
+// done, and leaves a line for the judge if anything stood or stands.
+func (db *DB) OutlookMade(ctx context.Context, station string, wanted int64, through, thaw, freeze pipeline.Day, made []OutlookRow) error {
+	ids, seasons := make([]int64, 0, len(made)), make([]time.Time, 0, len(made))
+	for i := range made {
+		if made[i].DesignValueID != nil {
+			ids, seasons = append(ids, *made[i].DesignValueID), append(seasons, made[i].SeasonStart.Time())
+		}
+	}
 	return db.within(ctx, func(tx pgx.Tx) error {
+		gone, err := tx.Exec(ctx, `delete from thaw.outlooks where station = $1
+			and season_start >= case kind when 'thaw' then $3::date else $4::date end
+			and (through_day > $2 or not (design_value_id, season_start) in (select * from unnest($5::bigint[], $6::date[])))`,
+			station, through.Time(), thaw.Time(), freeze.Time(), ids, seasons)
+		if err != nil {
+			return fmt.Errorf("clear outlooks of %s: %w", station, err)
+		}
+		if err := writeOutlooks(ctx, tx, made); err != nil {
+			return err
+		}
 		if _, err := tx.Exec(ctx, `update thaw.stations set outlook_made = $2 where station = $1`, station, wanted); err != nil {
 			return fmt.Errorf("record outlook of %s: %w", station, err)
 		}
-		if from == nil {
+		if gone.RowsAffected() == 0 && len(made) == 0 {
 			return nil
 		}
-		return addChange(ctx, tx, station, *from)
+		return addChange(ctx, tx, station, min(through, thaw, freeze))
 	})
 }
 

@@ -51,7 +51,9 @@ func (db *DB) State(ctx context.Context, s Stated) error {
 }
 
 func stateStations(ctx context.Context, tx pgx.Tx, s Stated) error {
-	for _, st := range s.Stations {
+	// In the order in which others take their rows: see Take.AddChange.
+	stations := slices.SortedFunc(slices.Values(s.Stations), func(a, b pipeline.Station) int { return cmp.Compare(a.ID, b.ID) })
+	for _, st := range stations {
 		_, err := tx.Exec(ctx, `insert into thaw.stations as o (station, name, latitude_deg, longitude_deg, elevation_m,
 				utc_offset_s, day_starts_s, mean_rule, min_hours, max_hole_hours, base_c, fill_days,
 				thaw_year_starts, freeze_year_starts, measures, bases, climatology_fills)

@@ -20,6 +20,8 @@ type Take struct {
 	tx      pgx.Tx
 	station string
 	fresh   fresh
+	// observed says that the station's observed days are not what they were.
+	observed bool
 }
 
 // TakeStation runs f in a transaction that holds the station's lock, and
@@ -192,16 +194,40 @@ func (t *Take) CommitParts(ctx context.Context, parts []*pipeline.Part, fates []
 }
 
 // AddChange leaves a line for the judge: surfaces on this station are to be
-// judged from a day on. Records that are joined from this one and others are to
-// be made anew; they are marked even if they are already, see Reindexed.
+// judged from a day on. Its outlooks, the records that are joined from it and,
+// after ObservedChanged, the stations that are filled from it are to be made anew;
+// they are marked even if they are already, see Reindexed. It comes last in a
+// transaction, and takes the rows of all of them in order, so that stations which
+// are each other's neighbours do not wait for one another in a circle.
 func (t *Take) AddChange(ctx context.Context, from pipeline.Day) error {
-	_, err := t.tx.Exec(ctx, `update thaw.stations set recompute = true
-		where station in (select station from thaw.station_members where member = $1)`, t.station)
+	_, err := t.tx.Exec(ctx, `select from thaw.stations where station = $1
+			or station in (select station from thaw.station_members where member = $1)
+			or station in (select station from thaw.station_neighbours where neighbour = $1)
+		order by station for no key update`, t.station)
 	if err != nil {
-		return fmt.Errorf("mark records joined from %s: %w", t.station, err)
+		return fmt.Errorf("lock marks of %s and those beside it: %w", t.station, err)
+	}
+	if t.observed {
+		if err := t.markNeighbours(ctx); err != nil {
+			return err
+		}
+	}
+	if err := t.MarkJoined(ctx); err != nil {
+		return err
 	}
 	if _, err := t.tx.Exec(ctx, outlookWanted, t.station); err != nil {
 		return fmt.Errorf("ask for outlook of %s: %w", t.station, err)
 	}
 	return addChange(ctx, t.tx, t.station, from)
+}
+
+// MarkJoined marks records that are joined from this station and others to be
+// made anew.
+func (t *Take) MarkJoined(ctx context.Context) error {
+	_, err := t.tx.Exec(ctx, `update thaw.stations set recompute = true
+		where station in (select station from thaw.station_members where member = $1)`, t.station)
+	if err != nil {
+		return fmt.Errorf("mark records joined from %s: %w", t.station, err)
+	}
+	return nil
 }

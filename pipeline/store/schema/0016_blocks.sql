@@ -10,7 +10,7 @@ create table thaw.calendar (
 comment on table thaw.calendar is 'Every day that a record may have, with the first day of its month.';
 comment on column thaw.calendar.day is 'Day.';
 comment on column thaw.calendar.month is 'First day of its month.';
-insert into thaw.calendar select d, date_trunc('month', d) from generate_series(date '1800-01-01', date '2199-12-31', interval '1 day') d;
+insert into thaw.calendar select d, date_trunc('month', d) from generate_series(date '1699-01-01', date '2301-12-31', interval '1 day') d;
 create index on thaw.calendar (month);
 
 create table thaw.daily_blocks (
