@@ -181,7 +181,10 @@ func (s *Service) judgeSeason(ctx context.Context, j *store.Judging, d *store.De
 		change.Why = judge.Replaced
 	}
 	change.Announce = judge.Told(d.Direction, change.From, row.State) && s.open(d, season, past != nil || replaced, change.From == pipeline.Expected)
-	return j.AddStandingChange(ctx, row, change)
+	if err := j.AddStandingChange(ctx, row, change); err != nil || !change.Announce {
+		return err
+	}
+	return s.tell(ctx, j, row, change)
 }
 
 // keepExceedance opens, changes or withdraws the exceedance of a standing and

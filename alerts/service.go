@@ -7,6 +7,7 @@ import (
 
 	"go.uber.org/zap"
 
+	"thawledger/pipeline"
 	"thawledger/pipeline/store"
 )
 
@@ -26,6 +27,11 @@ type Service struct {
 	Log *zap.Logger
 	// Now is the clock: a season that is over by it is history, and told to no one.
 	Now func() time.Time
+	// Recipients are told of changes of Sites; what they are told is written with
+	// the change. Wake, if not nil, is called when something may have been written.
+	Recipients []pipeline.Recipient
+	Sites      []pipeline.Site
+	Wake       func()
 	// Poll is how often changes are looked for without a nudge; 2 s if zero.
 	Poll time.Duration
 }
@@ -68,6 +74,9 @@ func (s *Service) Pass(ctx context.Context) error {
 	stations, err := s.DB.ChangedStations(ctx)
 	if err != nil {
 		return err
+	}
+	if s.Wake != nil && len(stations) > 0 {
+		defer s.Wake()
 	}
 	var failed []error
 	for _, station := range stations {

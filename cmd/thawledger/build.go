@@ -10,6 +10,7 @@ import (
 	"go.uber.org/zap"
 
 	"thawledger/alerts"
+	"thawledger/alerts/send"
 	"thawledger/indices"
 	"thawledger/ingest"
 	"thawledger/ingest/archive"
@@ -30,6 +31,8 @@ import (
 //	      ^                     indices, changes         |
 //	      |                                              v
 //	      '------------------- alerts <--- changes, standings, exceedances
+//	                                                     |
+//	          mail, webhooks, CAP feeds <--- send <--- notices
 type daemon struct {
 	log     *zap.Logger
 	set     *settings.Settings
@@ -40,12 +43,14 @@ type daemon struct {
 	ingest  *ingest.Service
 	indices *indices.Service
 	alerts  *alerts.Service
+	sender  *send.Sender
+	now     func() time.Time
 }
 
 // build starts the services that the settings ask for and joins the stages. now
 // is the clock. What has been started is stopped again if anything fails.
 func build(ctx context.Context, set *settings.Settings, log *zap.Logger, now func() time.Time) (d *daemon, err error) {
-	d = &daemon{log: log, set: set}
+	d = &daemon{log: log, set: set, now: now}
 	defer func() {
 		if err != nil {
 			err = errors.Join(err, d.close(context.WithoutCancel(ctx)))
@@ -86,7 +91,10 @@ func build(ctx context.Context, set *settings.Settings, log *zap.Logger, now fun
 		DB: d.db, Taker: taker, Nudge: d.bus.Nudge, Log: log.Named("indices"),
 		CommitReadings: set.Work.CommitReadings, FailuresAllowed: set.Work.FailuresAllowed, Workers: 2,
 	}
-	d.alerts = &alerts.Service{DB: d.db, Bus: d.bus, Log: log.Named("alerts"), Now: now}
+	if d.sender, err = d.newSender(now); err != nil {
+		return d, err
+	}
+	d.alerts = &alerts.Service{DB: d.db, Bus: d.bus, Log: log.Named("alerts"), Now: now, Recipients: set.Recipients, Sites: set.Sites, Wake: d.sender.Wake}
 	return d, nil
 }
 
@@ -172,6 +180,9 @@ func (d *daemon) stages(only []string) []lifecycle.Stage {
 		if wanted(only, s.Name) {
 			out = append(out, s)
 		}
+	}
+	if wanted(only, "alerts") {
+		out = append(out, d.sending(d.now)...)
 	}
 	if d.set.Listen.Address != "" && wanted(only, "ingest") && !d.ingest.DeliveriesOnly {
 		out = append([]lifecycle.Stage{{Name: "push", Run: func(intake, _ context.Context) error { return d.takePushed(intake) }}}, out...)

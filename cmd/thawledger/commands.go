@@ -25,6 +25,9 @@ const usage = `thawledger keeps account of how much thaw each surface on frozen 
   thawledger filling show|test       how missing days would be filled, and how far off that is
   thawledger station compare A B     two records side by side, and the adjustment that joins them
   thawledger outlook [hindcast]      what seasons may come to; what such outlooks were worth
+  thawledger notices                 what was sent to whom, and what waits to be told
+  thawledger hold SITE[/SURFACE]     put notices off for a while; list; lift
+  thawledger seen KEY                mark a notice as seen
   thawledger version
 
 Each takes --help. Screening figures: local codes and a licensed engineer decide.
@@ -65,6 +68,12 @@ func (p program) run(ctx context.Context, args []string) error {
 		return p.station(ctx, rest)
 	case "approve":
 		return p.approve(ctx, rest)
+	case "notices":
+		return p.notices(ctx, rest)
+	case "hold":
+		return p.hold(ctx, rest)
+	case "seen":
+		return p.seen(ctx, rest)
 	case "version", "--version":
 		fmt.Fprintln(p.out, version())
 		return nil

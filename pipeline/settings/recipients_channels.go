@@ -1,6 +1,7 @@
 package settings
 
 import (
+	"net"
 	netmail "net/mail"
 	"net/url"
 	"os"
@@ -117,6 +118,11 @@ func (r *reader) webhookChannel(o *object, within func(string) string) *pipeline
 	return w
 }
 
+func loopback(host string) bool {
+	ip := net.ParseIP(host)
+	return host == "localhost" || ip != nil && ip.IsLoopback()
+}
+
 func (r *reader) capChannel(o *object) *pipeline.CAPChannel {
 	c := &pipeline.CAPChannel{
 		Sender:     o.text("sender", "write what identifies the agency for good, such as thaw@agency.example"),
@@ -127,6 +133,9 @@ func (r *reader) capChannel(o *object) *pipeline.CAPChannel {
 		BaseURL: o.text("base_url", "write where the feed is reached from outside, such as https://agency.example/cap/"),
 		FeedID:  o.text("feed_id", "write the feed's name for good, such as tag:agency.example,2031:thaw"),
 		Title:   o.text("title", "write the feed's title"),
+	}
+	if host, _, err := net.SplitHostPort(c.Listen); c.Listen != "" && (err != nil || !loopback(host)) {
+		r.fault(o.vals["listen"], o.at("listen"), `write one such as "127.0.0.1:8760" and put the agency's web server in front of it`, "%q is no loopback address, and the feed is not encrypted", c.Listen)
 	}
 	switch {
 	case o.bad:

@@ -121,6 +121,7 @@ func TestRecipientsRefused(t *testing.T) {
 		{"credentials in the address", "https://agency.example/thaw", "https://u:p@agency.example/thaw", "credentials stand in the address"},
 		{"two ways", `{name: hook, webhook`, `{name: hook, mail: {host: h, from: a@b.example}, webhook`, "channel hook has 2 of them"},
 		{"scope", "restriction: staff", "scope: Private", "channels[2].cap.addresses: it is missing"},
+		{"a feed for all to read", "127.0.0.1:0", "0.0.0.0:80", `"0.0.0.0:80" is no loopback address`},
 		{"twice", "{id: chief, hears", "{id: duty, hears", "recipient duty stands in line"},
 		{"nothing to hear", "hears: [{sites: [strip], surfaces: [apron], channels: [feed]}], gather_for", "gather_for", "recipients[1].hears: it is missing"},
 		{"instruction of no state", "{exceeded: ", "{exceded: ", "sites[0].instructions.exceded: there is no such key; did you mean exceeded?"},
