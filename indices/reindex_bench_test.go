@@ -160,18 +160,22 @@ func BenchmarkReindex(b *testing.B) {
 	readers(b, db)
 }
 
-// readers times reading the result: the view of blocks beside the table of rows.
+// readers times reading the result, one index with its bounds or all columns: the
+// view of blocks beside the table of rows.
 func readers(b *testing.B, db *pipelinetest.Database) {
-	for _, q := range []struct{ name, where string }{
-		{"station", "station = 'S050'"},
-		{"station_year", "station = 'S051' and day between '2005-01-01' and '2005-12-31'"},
-		{"day", "day = '2005-07-20'"},
+	const usual = "station, day, thaw_curve_c_days, thaw_curve_low_c_days, thaw_curve_high_c_days"
+	for _, q := range []struct{ name, columns, where string }{
+		{"station", usual, "station = 'S050'"},
+		{"station_all_columns", "*", "station = 'S052'"},
+		{"station_year", usual, "station = 'S051' and day between '2005-01-01' and '2005-12-31'"},
+		{"day", usual, "day = '2005-07-20'"},
+		{"day_all_columns", "*", "day = '2005-07-21'"},
 	} {
 		took := map[string]time.Duration{}
 		for range 20 {
 			for _, from := range []string{"rows_index", "thaw.air_index_daily"} {
 				start := time.Now()
-				if err := pipelinetest.Exec(b.Context(), db.URL, `select * from `+from+` where `+q.where); err != nil {
+				if err := pipelinetest.Exec(b.Context(), db.URL, `select `+q.columns+` from `+from+` where `+q.where); err != nil {
 					b.Fatal(err)
 				}
 				took[from] += time.Since(start)
