@@ -8,6 +8,7 @@ import (
 	"os"
 	"path/filepath"
 	"text/tabwriter"
+	"time"
 
 	"go.uber.org/zap"
 
@@ -25,9 +26,21 @@ func (p program) reading(ctx context.Context, set *settings.Settings) (db *store
 	if url == "" {
 		dir := filepath.Join(set.Data, "postgresql")
 		release, err := lifecycle.LockFolder(set.Data)
+		for errors.Is(err, lifecycle.ErrFolderInUse) {
+			// Another has a server there, or is about to, or is about to leave.
+			brief, cancel := context.WithTimeout(ctx, 5*time.Second)
+			db, err = store.Open(brief, localpg.DSN(dir, "postgres"), zap.NewNop())
+			inTime := brief.Err() == nil
+			cancel()
+			if err == nil {
+				return db, db.Close, nil
+			}
+			if inTime || ctx.Err() != nil {
+				return nil, nil, err
+			}
+			release, err = lifecycle.LockFolder(set.Data)
+		}
 		switch {
-		case errors.Is(err, lifecycle.ErrFolderInUse):
-			url = localpg.DSN(dir, "postgres")
 		case err != nil:
 			return nil, nil, err
 		default:

@@ -29,5 +29,10 @@ func LockFolder(dir string) (release func(), err error) {
 		}
 		return nil, fmt.Errorf("lock %s: %w", path, err)
 	}
-	return func() { f.Close() }, nil
+	return func() {
+		// Closing alone would leave the lock to a process that is being started at
+		// this moment and still has all open files.
+		syscall.Flock(int(f.Fd()), syscall.LOCK_UN) //nolint:errcheck // closing follows
+		f.Close()
+	}, nil
 }
