@@ -79,16 +79,18 @@ func (p program) networkOf(ctx context.Context, set *settings.Settings, station 
 }
 
 func pointsOf(ctx context.Context, db *store.DB, station string) ([]filling.Point, error) {
-	means, err := db.ObservedMeans(ctx, station)
+	means, err := db.DailyMeans(ctx, station)
 	if err != nil {
 		return nil, err
 	}
-	if len(means) == 0 {
-		return nil, fmt.Errorf("%s has no observed daily mean", station)
+	out := make([]filling.Point, 0, len(means))
+	for _, m := range means {
+		if m.Origin == pipeline.Observed {
+			out = append(out, filling.Point{Day: m.Day, MeanC: m.MeanC})
+		}
 	}
-	out := make([]filling.Point, len(means))
-	for i, m := range means {
-		out[i] = filling.Point{Day: m.Day, MeanC: m.MeanC}
+	if len(out) == 0 {
+		return nil, fmt.Errorf("%s has no observed daily mean", station)
 	}
 	return out, nil
 }

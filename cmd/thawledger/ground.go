@@ -78,7 +78,7 @@ func (g *grounded) read(ctx context.Context, db *store.DB, records map[string]*r
 		return err
 	}
 	if g.record = records[g.site.Station]; g.record == nil {
-		days, err := db.MeanDays(ctx, g.site.Station)
+		days, err := db.DailyMeans(ctx, g.site.Station)
 		if err != nil {
 			return err
 		}

@@ -20,7 +20,7 @@ type record struct {
 
 const datesOfYear = 365
 
-func newRecord(days []store.MeanDay) *record {
+func newRecord(days []store.MeanRow) *record {
 	r := &record{dates: map[pipeline.MonthDay]float64{}}
 	if len(days) == 0 {
 		return r
@@ -28,10 +28,14 @@ func newRecord(days []store.MeanDay) *record {
 	r.first = days[0].Day
 	r.days = make([]*float64, days[len(days)-1].Day-r.first+1)
 	n := map[pipeline.MonthDay]float64{}
-	for _, d := range days {
-		r.days[d.Day-r.first] = d.MeanC
-		if date := dateOf(d.Day); d.MeanC != nil && date != leapDay {
-			r.dates[date] += *d.MeanC
+	for i := range days {
+		d := &days[i]
+		if d.Origin == pipeline.Missing {
+			continue
+		}
+		r.days[d.Day-r.first] = &d.MeanC
+		if date := dateOf(d.Day); date != leapDay {
+			r.dates[date] += d.MeanC
 			n[date]++
 		}
 	}

@@ -88,7 +88,7 @@ func TestStagesStandApart(t *testing.T) {
 // pure are the packages of arithmetic.
 var pure = []string{
 	"pipeline", "ingest/normal", "ingest/csvfeed", "ingest/plausible",
-	"indices/daily", "indices/degreeday", "indices/filling", "indices/quality", "indices/surface", "indices/extreme", "indices/trend",
+	"indices/daily", "indices/compensated", "indices/degreeday", "indices/filling", "indices/quality", "indices/surface", "indices/extreme", "indices/trend",
 	"indices/chance", "indices/ground", "indices/heat", "indices/outlook",
 	"alerts/judge",
 }

@@ -1,5 +1,7 @@
 package degreeday
 
+import "thawledger/indices/compensated"
+
 // LeastPast is from how many past seasons on their relapses say when an onset
 // holds; with fewer it does above 50 degC.d. Both are common practice, no source.
 const LeastPast = 10
@@ -12,13 +14,13 @@ const LeastPast = 10
 // With to the day of a season's high it is the largest relapse that a thaw
 // (freeze) under way on the day at from has still met with.
 func LargestFall(excessC []float64, from, to int) float64 {
-	var since total // C less its highest value since from
+	var since compensated.Sum // C less its highest value since from
 	largest := 0.0
 	for i := from + 1; i <= to && i < len(excessC); i++ {
-		since.add(excessC[i])
-		fall := -since.value()
+		since.Add(excessC[i])
+		fall := -since.Value()
 		if fall <= 0 {
-			since = total{}
+			since = compensated.Sum{}
 		}
 		largest = max(largest, fall)
 	}

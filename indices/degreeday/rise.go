@@ -3,6 +3,8 @@ package degreeday
 import (
 	"fmt"
 	"math"
+
+	"thawledger/indices/compensated"
 )
 
 // Track is how the indices grow over a season, day by day, in degC.d.
@@ -64,7 +66,7 @@ func isTemperature(c float64) bool { return math.Abs(c) <= mostC }
 type rise struct {
 	running, toDate, sum float64
 
-	sinceLow, positive total
+	sinceLow, positive compensated.Sum
 	days               int
 	begin              int // place of the day after the latest low
 	first, last        int // of the largest rise
@@ -77,17 +79,17 @@ func newRise() rise { return rise{first: -1, last: -1, firstPos: -1, lastPos: -1
 func (r *rise) step(excessC, positiveC float64) {
 	i := r.days
 	r.days++
-	r.sinceLow.add(excessC)
-	r.running = r.sinceLow.value()
+	r.sinceLow.Add(excessC)
+	r.running = r.sinceLow.Value()
 	switch {
 	case r.running <= 0:
-		r.running, r.sinceLow, r.begin = 0, total{}, i+1
+		r.running, r.sinceLow, r.begin = 0, compensated.Sum{}, i+1
 	case r.running > r.toDate:
 		r.toDate, r.first, r.last = r.running, r.begin, i
 	}
 	if positiveC > 0 {
-		r.positive.add(positiveC)
-		r.sum = r.positive.value()
+		r.positive.Add(positiveC)
+		r.sum = r.positive.Value()
 	}
 	if excessC > 0 {
 		if r.firstPos < 0 {
@@ -96,21 +98,3 @@ func (r *rise) step(excessC, positiveC float64) {
 		r.lastPos = i
 	}
 }
-
-// total is a compensated sum (A. Neumaier, 1974, "Rundungsfehleranalyse einiger
-// Verfahren zur Summation endlicher Summen", ZAMM 54). For a year of daily means
-// the low part loses nothing, so that the value is the exact sum rounded once:
-// it never falls when a term rises.
-type total struct{ high, low float64 }
-
-func (t *total) add(x float64) {
-	sum := t.high + x
-	if math.Abs(t.high) >= math.Abs(x) {
-		t.low += (t.high - sum) + x
-	} else {
-		t.low += (x - sum) + t.high
-	}
-	t.high = sum
-}
-
-func (t *total) value() float64 { return t.high + t.low }

@@ -4,6 +4,8 @@ import (
 	"fmt"
 	"math"
 	"slices"
+
+	"thawledger/indices/compensated"
 )
 
 // Plotting is a plotting position: the chance (m-A)/(n+1-2A) that the value of
@@ -41,21 +43,21 @@ func Correlation(d Distribution, sample []float64, position Plotting) float64 {
 	x := slices.Sorted(slices.Values(sample))
 	n := len(x)
 	q := make([]float64, n)
-	var sumX, sumQ total
+	var sumX, sumQ compensated.Sum
 	for i := range x {
 		q[i] = d.Quantile(position.At(i+1, n))
-		sumX.add(x[i])
-		sumQ.add(q[i])
+		sumX.Add(x[i])
+		sumQ.Add(q[i])
 	}
-	meanX, meanQ := sumX.value()/float64(n), sumQ.value()/float64(n)
-	var xx, qq, xq total
+	meanX, meanQ := sumX.Value()/float64(n), sumQ.Value()/float64(n)
+	var xx, qq, xq compensated.Sum
 	for i := range x {
 		dx, dq := x[i]-meanX, q[i]-meanQ
-		xx.add(float64(dx * dx))
-		qq.add(float64(dq * dq))
-		xq.add(float64(dx * dq))
+		xx.Add(float64(dx * dx))
+		qq.Add(float64(dq * dq))
+		xq.Add(float64(dx * dq))
 	}
-	r := xq.value() / math.Sqrt(xx.value()*qq.value())
+	r := xq.Value() / math.Sqrt(xx.Value()*qq.Value())
 	if !(r <= 1) {
 		return 1
 	}
@@ -73,12 +75,12 @@ func Correlation(d Distribution, sample []float64, position Plotting) float64 {
 func AndersonDarling(d Distribution, sample []float64) float64 {
 	x := slices.Sorted(slices.Values(sample))
 	n := float64(len(x))
-	var sum total
+	var sum compensated.Sum
 	for i := range x {
 		below, above := max(d.CDF(x[i]), beyond), max(d.Above(x[len(x)-1-i]), beyond)
-		sum.add(float64(float64(2*i+1) * (math.Log(below) + math.Log(above))))
+		sum.Add(float64(float64(2*i+1) * (math.Log(below) + math.Log(above))))
 	}
-	return -n - sum.value()/n
+	return -n - sum.Value()/n
 }
 
 const beyond = 1e-10

@@ -4,6 +4,8 @@ import (
 	"fmt"
 	"math"
 	"slices"
+
+	"thawledger/indices/compensated"
 )
 
 // MinSample is the least number of seasons that a distribution is fitted to:
@@ -53,16 +55,16 @@ func SampleLMoments(sample []float64) (LMoments, error) {
 func sortedLMoments(x []float64) LMoments {
 	n := float64(len(x))
 	middle := x[len(x)/2]
-	var b [4]total
+	var b [4]compensated.Sum
 	for i, v := range x {
 		j := float64(i)
 		w := 1.0
 		for r := range b {
-			b[r].add(float64(w * (v - middle)))
+			b[r].Add(float64(w * (v - middle)))
 			w *= (j - float64(r)) / (n - 1 - float64(r))
 		}
 	}
-	b0, b1, b2, b3 := b[0].value()/n, b[1].value()/n, b[2].value()/n, b[3].value()/n
+	b0, b1, b2, b3 := b[0].Value()/n, b[1].Value()/n, b[2].Value()/n, b[3].Value()/n
 	m := LMoments{
 		N: len(x), L1: middle + b0, L2: 2*b1 - b0, L3: 6*b2 - 6*b1 + b0,
 		L4: 20*b3 - 30*b2 + 12*b1 - b0,
@@ -80,19 +82,3 @@ func finite(sample []float64) error {
 	}
 	return nil
 }
-
-// total is a compensated sum (A. Neumaier, 1974, "Rundungsfehleranalyse einiger
-// Verfahren zur Summation endlicher Summen", ZAMM 54).
-type total struct{ high, low float64 }
-
-func (t *total) add(x float64) {
-	sum := t.high + x
-	if math.Abs(t.high) >= math.Abs(x) {
-		t.low += (t.high - sum) + x
-	} else {
-		t.low += (x - sum) + t.high
-	}
-	t.high = sum
-}
-
-func (t *total) value() float64 { return t.high + t.low }

@@ -5,6 +5,7 @@ import (
 	"fmt"
 	"slices"
 
+	"thawledger/indices/compensated"
 	"thawledger/pipeline"
 )
 
@@ -116,9 +117,9 @@ func meanOf(seasons []Season, of func(Season) float64, tail Tail, count int) flo
 	if tail == Upper {
 		slices.Reverse(v)
 	}
-	var sum total
+	var sum compensated.Sum
 	for _, x := range v[:count] {
-		sum.add(x)
+		sum.Add(x)
 	}
-	return sum.value() / float64(count)
+	return sum.Value() / float64(count)
 }

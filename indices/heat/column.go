@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 
+	"thawledger/indices/compensated"
 	"thawledger/pipeline"
 )
 
@@ -51,7 +52,7 @@ type Column struct {
 	h        []float64 // enthalpy of each cell, J/m3
 	q        []float64 // heat through the top of each cell in the step, J/m2; the last is of the base
 	maxStepS float64
-	in       total // heat let in since New or Reset, J/m2
+	in       compensated.Sum // heat let in since New or Reset, J/m2
 }
 
 // cell is what stays the same of a cell.
@@ -115,7 +116,7 @@ func (c *Column) Reset(startC float64) {
 	for i := range c.cells {
 		c.h[i] = c.cells[i].enthalpy(startC, c.rangeK)
 	}
-	c.in = total{}
+	c.in = compensated.Sum{}
 }
 
 // isTemperature is false for NaN too.

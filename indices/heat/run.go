@@ -3,6 +3,8 @@ package heat
 import (
 	"fmt"
 	"math"
+
+	"thawledger/indices/compensated"
 )
 
 const secondsPerDay = 86400
@@ -102,8 +104,8 @@ func (c *Column) step(w *workspace, surfaceC, s float64) {
 	for i := range c.cells {
 		c.h[i] += (c.q[i] - c.q[i+1]) / c.cells[i].dx
 	}
-	c.in.add(c.q[0])
-	c.in.add(fromBase)
+	c.in.Add(c.q[0])
+	c.in.Add(fromBase)
 }
 
 // belowC is a temperature below the base: which side of 0 degC it is on is all that
@@ -218,16 +220,16 @@ func (c *Column) TemperatureC(depthM float64) float64 {
 
 // HeatJM2 returns the heat of the column in J/m2, latent heat included.
 func (c *Column) HeatJM2() float64 {
-	var sum total
+	var sum compensated.Sum
 	for i := range c.cells {
-		sum.add(c.h[i] * c.cells[i].dx)
+		sum.Add(c.h[i] * c.cells[i].dx)
 	}
-	return sum.value()
+	return sum.Value()
 }
 
 // LetInJM2 returns the heat let in through the surface and the base since New or
 // Reset, J/m2: what HeatJM2 has risen by.
-func (c *Column) LetInJM2() float64 { return c.in.value() }
+func (c *Column) LetInJM2() float64 { return c.in.Value() }
 
 // SpunUp is how a spin-up ended.
 type SpunUp struct {
@@ -268,18 +270,3 @@ func (c *Column) SpinUp(yearC []float64, stepS, toleranceK float64, maxYears int
 	}
 	return out, nil
 }
-
-// total is a compensated sum (A. Neumaier, 1974, ZAMM 54).
-type total struct{ high, low float64 }
-
-func (t *total) add(x float64) {
-	sum := t.high + x
-	if math.Abs(t.high) >= math.Abs(x) {
-		t.low += (t.high - sum) + x
-	} else {
-		t.low += (x - sum) + t.high
-	}
-	t.high = sum
-}
-
-func (t *total) value() float64 { return t.high + t.low }

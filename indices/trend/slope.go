@@ -4,6 +4,8 @@ import (
 	"fmt"
 	"math"
 	"slices"
+
+	"thawledger/indices/compensated"
 )
 
 // Line is a straight line through a record, and how sure its slope is.
@@ -118,36 +120,21 @@ func LagOne(points []Point, l Line) (r float64, pairs int, ok bool) {
 		return 0, 0, false
 	}
 	e := l.Residuals(x)
-	var sum, squares, products total
+	var sum, squares, products compensated.Sum
 	for _, v := range e {
-		sum.add(v)
+		sum.Add(v)
 	}
-	mean := sum.value() / float64(len(e))
+	mean := sum.Value() / float64(len(e))
 	for i, v := range e {
-		squares.add(float64((v - mean) * (v - mean)))
+		squares.Add(float64((v - mean) * (v - mean)))
 		if i > 0 && x[i].Time-x[i-1].Time == 1 {
-			products.add(float64((v - mean) * (e[i-1] - mean)))
+			products.Add(float64((v - mean) * (e[i-1] - mean)))
 			pairs++
 		}
 	}
-	if pairs < 3 || !(squares.value() > 1e-18*(1+mean*mean)) {
+	if pairs < 3 || !(squares.Value() > 1e-18*(1+mean*mean)) {
 		return 0, pairs, false
 	}
-	r = products.value() / squares.value() * float64(len(e)-1) / float64(pairs)
+	r = products.Value() / squares.Value() * float64(len(e)-1) / float64(pairs)
 	return min(max(r, -1), 1), pairs, true
 }
-
-// total is a compensated sum (A. Neumaier, 1974, ZAMM 54).
-type total struct{ high, low float64 }
-
-func (t *total) add(x float64) {
-	sum := t.high + x
-	if math.Abs(t.high) >= math.Abs(x) {
-		t.low += (t.high - sum) + x
-	} else {
-		t.low += (x - sum) + t.high
-	}
-	t.high = sum
-}
-
-func (t *total) value() float64 { return t.high + t.low }

@@ -89,9 +89,8 @@ type BreakOfRecord struct {
 
 // BreaksOfRecord returns a station's possible breaks within some days, in order.
 func (db *DB) BreaksOfRecord(ctx context.Context, station string, from, to time.Time) ([]BreakOfRecord, error) {
-	rows, err := db.pool.Query(ctx, `select what, from_day, note from thaw.station_history
-		where station = $1 and retired_at is null and what in ('sensor', 'shield', 'height', 'moved', 'calibrated')
-			and from_day between $2 and $3 order by from_day, what, note`, station, from, to)
+	rows, err := db.pool.Query(ctx, `select what, day as from_day, note from thaw.record_breaks
+		where station = $1 and what not in ('handed over', 'rule') and day between $2 and $3 order by day, what, note`, station, from, to)
 	if err != nil {
 		return nil, fmt.Errorf("read history of %s: %w", station, err)
 	}

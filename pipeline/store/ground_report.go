@@ -4,10 +4,6 @@ import (
 	"context"
 	"fmt"
 	"time"
-
-	"github.com/jackc/pgx/v5"
-
-	"thawledger/pipeline"
 )
 
 // GroundSeason is a season of the station that a surface is on, with the n-factor
@@ -46,29 +42,4 @@ func (db *DB) GroundSeasons(ctx context.Context, site, surface string) ([]Ground
 		return nil, fmt.Errorf("read seasons of %s/%s: %w", site, surface, err)
 	}
 	return collect[GroundSeason](rows, "seasons")
-}
-
-// MeanDay is a day of a record; MeanC is nil where it has no mean.
-type MeanDay struct {
-	Day   pipeline.Day
-	MeanC *float64
-}
-
-// MeanDays returns every day of the station's record in order of date.
-func (db *DB) MeanDays(ctx context.Context, station string) ([]MeanDay, error) {
-	rows, err := db.pool.Query(ctx, `select day, mean_c from thaw.daily_values where station = $1 order by day`, station)
-	if err != nil {
-		return nil, fmt.Errorf("read daily values of %s: %w", station, err)
-	}
-	out, err := pgx.CollectRows(rows, func(r pgx.CollectableRow) (MeanDay, error) {
-		var d MeanDay
-		var day time.Time
-		err := r.Scan(&day, &d.MeanC)
-		d.Day = dayOf(day)
-		return d, err
-	})
-	if err != nil {
-		return nil, fmt.Errorf("read daily values of %s: %w", station, err)
-	}
-	return out, nil
 }

@@ -89,11 +89,10 @@ func (t *Take) indexBlock(month pipeline.Day, rows []IndexRow) []any {
 	n := len(rows)
 	out := make([]any, 0, len(indexColumns))
 	out = append(out, t.station, month.Time(), rows[0].Day.Time(), rows[n-1].Day.Time(), rows[0].Thaw.Season.Time(), rows[0].Freeze.Season.Time())
-	numbers := make([]float64, 4*n)
 	for _, of := range []func(*IndexRow) *Indices{
 		func(r *IndexRow) *Indices { return &r.Thaw }, func(r *IndexRow) *Indices { return &r.Freeze },
 	} {
-		running := make([]pgtype.Float8, n)
+		running, numbers := make([]pgtype.Float8, n), make([]float64, 4*n)
 		curveLow, curveHigh, sumLow, sumHigh := numbers[:n:n], numbers[n:2*n:2*n], numbers[2*n:3*n:3*n], numbers[3*n:]
 		open := false
 		for i := range rows {
@@ -110,7 +109,6 @@ func (t *Take) indexBlock(month pipeline.Day, rows []IndexRow) []any {
 		if open {
 			out[len(out)-4], out[len(out)-1] = curveHigh, sumHigh
 		}
-		numbers = make([]float64, 4*n)
 	}
 	return out
 }

@@ -11,8 +11,8 @@ import (
 	"thawledger/pipeline"
 )
 
-// MeanRow is a day's mean as an outlook wants it: MeanC if Origin is not
-// Missing, and bounds that are equal to it then.
+// MeanRow is a day's mean: MeanC if Origin is not Missing, and bounds that are
+// equal to it then.
 type MeanRow struct {
 	Day                pipeline.Day
 	Origin             pipeline.Origin
